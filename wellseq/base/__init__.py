@@ -1,0 +1,1 @@
+"""Floor 0: words everybody shares: quantities, places, findings, names."""
