@@ -1,0 +1,56 @@
+"""Everything known about one sequence file: what checks read and reports show."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+from pathlib import Path
+
+from wellseq.base.finding import Finding, Mistake, Origin
+from wellseq.base.place import Place
+from wellseq.model.sequence import Sequence
+from wellseq.model.trap import Trap
+from wellseq.timeline.shipped import Shipped
+from wellseq.timeline.timeline import Timeline
+from wellseq.wells.wells import Wells
+
+
+@dataclass(frozen=True, slots=True)
+class Case:
+    """One file with all its stages; a stage that could not be reached is None.
+
+    `mistakes` are those of the text, the trap file and the drawing.  `findings` are judged, passes
+    included, in order of place.  `ran` and `not_run` name the checks that ran and, with the cause,
+    those that had nothing to read.
+    """
+
+    path: Path
+    shown: str
+    mistakes: tuple[Mistake, ...] = ()
+    trap: Trap | None = None
+    sequence: Sequence | None = None
+    timeline: Timeline | None = None
+    shipped: Shipped | None = None
+    wells: Wells | None = None
+    findings: tuple[Finding, ...] = ()
+    ran: tuple[str, ...] = ()
+    not_run: tuple[tuple[str, str], ...] = ()
+
+    def with_findings(
+        self,
+        findings: tuple[Finding, ...],
+        ran: tuple[str, ...],
+        not_run: tuple[tuple[str, str], ...],
+    ) -> Case:
+        """The same case with its verdicts."""
+        return replace(self, findings=findings, ran=ran, not_run=not_run)
+
+    @property
+    def blocked(self) -> tuple[Finding, ...]:
+        """The findings that stand between this sequence and its table."""
+        return tuple(finding for finding in self.findings if finding.blocks)
+
+    def origin(self, number: int) -> Origin:
+        """The step behind a number of the timeline; the start of the file when there is none."""
+        if self.timeline is not None and 0 <= number < len(self.timeline.origins):
+            return self.timeline.origins[number]
+        return Origin(Place(self.shown))
