@@ -33,7 +33,7 @@ class Limit:
     unit: str = ""
 
     def judge(self, value: float, uncertainty: float = 0.0) -> Verdict:
-        """Pass, fail or unsure for a reading of `value` ± `uncertainty` (same unit as the limit)."""
+        """Pass, fail or unsure for a reading `value` ± `uncertainty` in the limit's unit."""
         if not (math.isfinite(value) and math.isfinite(uncertainty) and math.isfinite(self.value)):
             return Verdict.UNSURE
         sign = 1.0 if self.side == "at most" else -1.0
@@ -42,6 +42,16 @@ class Limit:
         if sign * value - uncertainty > sign * self.value:
             return Verdict.FAIL
         return Verdict.UNSURE
+
+    def judge_between(self, low: float, high: float) -> Verdict:
+        """Pass, fail or unsure for a value known to lie from `low` to `high` (ends included)."""
+        if not (math.isfinite(low) and math.isfinite(high) and math.isfinite(self.value)):
+            return Verdict.UNSURE
+        best, worst = (low, high) if self.side == "at most" else (-high, -low)
+        bound = self.value if self.side == "at most" else -self.value
+        if worst <= bound:
+            return Verdict.PASS
+        return Verdict.FAIL if best > bound else Verdict.UNSURE
 
     def margin(self, value: float, uncertainty: float = 0.0) -> float:
         """How far inside the limit the worst of the reading is; negative outside, NaN unknown."""
@@ -77,13 +87,16 @@ class Origin:
 
 @dataclass(frozen=True, slots=True)
 class Mistake:
-    """Something wrong with a text: the name of the bad thing, where, what, and what would be right."""
+    """Something wrong with a text: the bad thing's name, where, what, and what would be right."""
 
     name: str
     place: Place
     message: str
     hint: str = ""
     origin: Origin | None = None
+    subject: str = ""
+    block: str = ""
+    window_s: tuple[float, float] | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -92,7 +105,8 @@ class Reading:
 
     `value` and `uncertainty` are in the limit's unit; `message` says in words what was measured and
     may hold {value}, {uncertainty}, {limit} (filled in with units); `window_s` is the span of time
-    within the block, in seconds.
+    within the block, in seconds.  `between`, where given, is the interval that is judged instead of
+    value ± uncertainty, whose sum and difference would move its ends by rounding.
     """
 
     value: float
@@ -104,13 +118,14 @@ class Reading:
     block: str = ""
     window_s: tuple[float, float] | None = None
     hint: str = ""
+    between: tuple[float, float] | None = None
 
 
 @dataclass(frozen=True, slots=True)
 class Finding:
     """A judged reading or a mistake, with everything a report needs.
 
-    `value`, `limit`, `margin`, `uncertainty` share `unit`; they are None where nothing was measured.
+    `value`, `limit`, `margin`, `uncertainty` share `unit`, or are None when nothing was measured.
     """
 
     name: str

@@ -6,10 +6,11 @@ import unicodedata
 from collections.abc import Iterable
 from difflib import get_close_matches
 
-RESERVED = frozenset(
+RESERVED_TEXT = (
     "to from over for at with on through using between and closing after until within around "
-    "beside in of above below because keeping allow is".split()
+    "beside in of above below because keeping allow is"
 )
+RESERVED = frozenset(RESERVED_TEXT.split())
 """Words that begin a clause; no name may be one of them."""
 
 
@@ -31,7 +32,7 @@ def nearest(name: str, known: Iterable[str], what: str = "") -> str:
 
 
 def printable(text: str) -> str:
-    """Escape control characters and bidirectional controls, so that a name cannot steer a terminal."""
+    """Escape control and bidirectional characters, so that a name cannot steer a terminal."""
     return "".join(
         char if unicodedata.category(char) not in ("Cc", "Cf", "Cs") else f"\\u{ord(char):04x}"
         for char in text

@@ -1,8 +1,8 @@
 """Quantities: exact numbers with a kind, and the one closed table of units.
 
 Every number of a sequence or trap file is an exact rational until it leaves this floor, so that
-`20 us` is twenty whole microseconds.  `energy` (eV), `temperature` (K) and `potential` (V) are kinds
-of their own and never mix.  SI prefixes: BIPM, The International System of Units, 9th ed., 2019.
+`20 us` is twenty whole microseconds.  `energy` (eV), `temperature` (K) and `potential` (V) are
+kinds of their own and never mix.  SI prefixes: BIPM, The International System of Units, 9th ed., 2019.
 """
 
 from __future__ import annotations
@@ -152,12 +152,14 @@ def read_quantity(text: str, unit: str) -> Fraction:
     """
     match = _LITERAL.fullmatch(text)
     if not match:
-        raise QuantityError(f"'{text}' is not a value with a unit", f"write for example {_sample(unit)}")
+        raise QuantityError(
+            f"'{text}' is not a value with a unit", f"write for example {_sample(unit)}"
+        )
     return _signed(match, text, unit)
 
 
 def read_spread(text: str, unit: str) -> Spread:
-    """Read `1.0003 ± 0.0001` or `8e4 ± 30 %`, or a bare value (half-width 0), of the kind of `unit`.
+    """Read `1.0003 ± 0.0001`, `8e4 ± 30 %` or a bare value (half-width 0) of the kind of `unit`.
 
     Raises QuantityError naming what was wanted.
     """

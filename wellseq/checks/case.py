@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass, replace
 from pathlib import Path
+from typing import TypeVar
 
 from wellseq.base.finding import Finding, Mistake, Origin
 from wellseq.base.place import Place
@@ -12,6 +13,15 @@ from wellseq.model.trap import Trap
 from wellseq.timeline.shipped import Shipped
 from wellseq.timeline.timeline import Timeline
 from wellseq.wells.wells import Wells
+
+Stage = TypeVar("Stage")
+
+
+def reached(stage: Stage | None) -> Stage:
+    """A stage that a check `NEEDS` and therefore has; raises TypeError for a check that errs."""
+    if stage is None:
+        raise TypeError("this check reads a stage that its NEEDS does not name")
+    return stage
 
 
 @dataclass(frozen=True, slots=True)
@@ -54,3 +64,9 @@ class Case:
         if self.timeline is not None and 0 <= number < len(self.timeline.origins):
             return self.timeline.origins[number]
         return Origin(Place(self.shown))
+
+    def block_name(self, index: int) -> str:
+        """The name of a block of the timeline; empty when there is none of that number."""
+        if self.timeline is not None and 0 <= index < len(self.timeline.blocks):
+            return self.timeline.blocks[index].name
+        return ""

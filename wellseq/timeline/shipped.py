@@ -49,7 +49,7 @@ class Stray:
 class ShippedBlock:
     """The rows of one block.
 
-    ticks: (rows,) whole ticks of `tick_s` from the block's first row, rising, first 0, last the end.
+    ticks: (rows,) whole ticks of `tick_s` from the block's first row, rising from 0 to the end.
     codes: (rows, converters), 0 … 2^bits − 1; levels: (rows, switches) indices of levels;
     states: (rows, lines) indices of states.  Columns are in the trap file's order.
     """

@@ -8,25 +8,34 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from enum import StrEnum
 from fractions import Fraction
 
 from wellseq.base.finding import Mistake, Origin
 from wellseq.model.effects import Effect
+from wellseq.model.sequence import CloudDeclared
 from wellseq.model.trap import Trap
 
 
 class Shape(StrEnum):
-    """How a piece goes from its first voltage to its last."""
+    """How a piece goes from its first voltage to its last.
+
+    `STRAIGHT` in time, `SMOOTH` by a half-cosine, `EDGE` as fast as the output can: one new code,
+    after which the electrode gets there in any monotone shape before the piece ends.
+    """
 
     STRAIGHT = "straight"
     SMOOTH = "smooth"
+    EDGE = "edge"
 
 
 def progress(shape: Shape, share: float) -> float:
-    """Progress 0…1 of a piece when `share` 0…1 of its time is over (half-cosine when smooth)."""
-    return share if shape is Shape.STRAIGHT else 0.5 * (1.0 - math.cos(math.pi * share))
+    """Progress 0…1 of a piece when `share` 0…1 of its time is over (half-cosine when smooth).
+
+    For an edge this is the straight shape, one of the shapes it may have.
+    """
+    return 0.5 * (1.0 - math.cos(math.pi * share)) if shape is Shape.SMOOTH else share
 
 
 @dataclass(frozen=True, slots=True)
@@ -45,7 +54,7 @@ class Piece:
     def slope_max_V_per_s(self) -> float:
         """Greatest slope of the wish, V/s, without sign."""
         slope = abs(self.to_V - self.from_V) / float(self.end_s - self.start_s)
-        return slope if self.shape is Shape.STRAIGHT else slope * math.pi / 2
+        return slope * math.pi / 2 if self.shape is Shape.SMOOTH else slope
 
     def at(self, time_s: Fraction) -> float:
         """Wished volts at an instant within the piece."""
@@ -148,12 +157,16 @@ class Block:
 
 @dataclass(frozen=True, slots=True)
 class Timeline:
-    """All blocks of a sequence; `origins[number]` is the step behind a number."""
+    """All blocks of a sequence; `origins[number]` is the step behind a number.
+
+    `clouds` are the declared clouds that events speak of.
+    """
 
     trap: Trap
     blocks: tuple[Block, ...]
     origins: tuple[Origin, ...]
     mistakes: tuple[Mistake, ...]
+    clouds: Mapping[str, CloudDeclared] = field(default_factory=dict)
 
     @property
     def duration_s(self) -> Fraction:

@@ -1,1 +1,1 @@
-"""Floor 5: Timeline, Shipped → each cloud's well followed through all of time, with certificates."""
+"""Floor 5: Timeline, Shipped → each cloud's well followed through time, with certificates."""

@@ -64,9 +64,9 @@ class SideDepth:
 class Held:
     """A stretch of block time in which one region is proved to hold the cloud's minimum.
 
-    `floor_V` is the depth demanded then on each side (left, right); `trap_V` the certified depth out
-    to the ends of the stack.  `energy_V` is set for a bunch that has no temperature yet: then
-    depths count from ground and the floor is its highest kept energy per charge.
+    `floor_V` is the depth demanded then on each side (left, right); `trap_V` the certified depth
+    out to the ends of the stack.  `energetic` marks a bunch that has no temperature yet: its depths
+    count from ground and the floor is its highest kept energy per charge.
     """
 
     cloud: str
@@ -119,7 +119,10 @@ class Unproved:
 
 @dataclass(frozen=True, slots=True)
 class Separation:
-    """The least distance between the proved wells of two clouds during a stretch, m."""
+    """The least distance between the proved wells of two clouds during a stretch, m.
+
+    `other_species`: the two are of different species.
+    """
 
     clouds: tuple[str, str]
     block: int
@@ -127,12 +130,12 @@ class Separation:
     end_s: float
     number: int
     least_m: float
-    opposite: bool
+    other_species: bool
 
 
 @dataclass(frozen=True, slots=True)
 class WayOut:
-    """How much an outgoing particle still has to climb beyond the barrier, V (0: falls all along)."""
+    """How much an outgoing particle must still climb beyond the barrier, V (0: falls all along)."""
 
     cloud: str
     block: int

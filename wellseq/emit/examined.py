@@ -1,0 +1,70 @@
+"""One examined thing and its findings: what every form of report is made from.
+
+A sequence (`Case`) and a published folder both become an `Examined`, so a report never asks which.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+
+from wellseq.base.finding import Finding, Verdict
+from wellseq.checks.case import Case
+
+
+@dataclass(frozen=True, slots=True)
+class Examined:
+    """What was examined, under which name it is shown, and everything found.
+
+    `ran` and `not_run` name the checks; `duration_s` is the time played (s) or None when no
+    timeline was reached; `sources` maps file names as shown to their text, for excerpts.
+    """
+
+    shown: str
+    findings: tuple[Finding, ...]
+    ran: tuple[str, ...]
+    not_run: tuple[tuple[str, str], ...] = ()
+    duration_s: float | None = None
+    sources: Mapping[str, str] = field(default_factory=dict)
+
+    @property
+    def cause(self) -> str:
+        """Why this was not examined wholly; empty when it was."""
+        if self.not_run:
+            name, why = self.not_run[0]
+            more = f" and {len(self.not_run) - 1} more" if len(self.not_run) > 1 else ""
+            return f"{name}{more}: {why}"
+        return "" if self.ran else "no check ran"
+
+    @property
+    def clear(self) -> bool:
+        """Whether everything was examined and nothing stands in the way."""
+        return not self.cause and not any(finding.blocks for finding in self.findings)
+
+    def having(self, *verdicts: Verdict) -> tuple[Finding, ...]:
+        """The findings with one of these verdicts, in order of place."""
+        return tuple(finding for finding in self.findings if finding.verdict in verdicts)
+
+    def by_margin(self) -> tuple[Finding, ...]:
+        """The passing readings, the one nearest to its limit first."""
+        return tuple(sorted(self.having(Verdict.PASS), key=nearness))
+
+
+def nearness(finding: Finding) -> tuple[float, object, str, str]:
+    """A sorting key: the margin as a share of the limit, then place, name and subject."""
+    margin = finding.margin if finding.margin is not None else float("inf")
+    scale = abs(finding.limit) if finding.limit else 1.0
+    return (margin / scale, finding.place, finding.name, finding.subject)
+
+
+def examined(case: Case) -> Examined:
+    """The findings of one sequence file, as reports want them."""
+    files = case.sequence.sources if case.sequence is not None else ()
+    return Examined(
+        shown=case.shown,
+        findings=case.findings,
+        ran=case.ran,
+        not_run=case.not_run,
+        duration_s=float(case.timeline.duration_s) if case.timeline is not None else None,
+        sources={file.shown: file.content.decode("utf-8-sig", "replace") for file in files},
+    )

@@ -1,0 +1,145 @@
+"""`manifest.json`: what a published folder is, made of what, for which hardware, within which limits.
+
+It holds the SHA-256 of every other file, and of itself without that one entry (`digest`), so that
+any change anywhere shows.  That is a seal against accidents, not a signature against forgers.
+"""
+
+from __future__ import annotations
+
+import hashlib
+import json
+from collections.abc import Mapping
+from dataclasses import dataclass
+from fractions import Fraction
+
+from wellseq.base.finding import Verdict
+from wellseq.checks.case import Case
+from wellseq.checks.judging import Cleared
+from wellseq.emit.blocks import decimal, drives_name, exact, table_name
+from wellseq.emit.content import content_id
+from wellseq.emit.hardware import trap_summary
+from wellseq.emit.sources import copies
+from wellseq.emit.story import allowances, assumed, roundings
+from wellseq.model.trap import Trap
+from wellseq.timeline.shipped import Shipped, ShippedBlock
+from wellseq.version import __version__
+
+MANIFEST = "manifest.json"
+SCHEMA = "wellseq/folder"
+SCHEMA_VERSION = 1
+ROUNDINGS_KEPT = 32
+NOT_EXAMINED = (
+    "No interlock rule was examined: this version reads no rules.",
+    "No forecast of any cloud was made: depths are vacuum depths, space charge is not taken off.",
+)
+
+
+@dataclass(frozen=True, slots=True)
+class Written:
+    """A file of the folder as written: its SHA-256 in hexadecimal digits, its length in bytes."""
+
+    sha256: str
+    size: int
+
+
+def manifest(cleared: Cleared, written: Mapping[str, Written]) -> bytes:
+    """The manifest of a folder whose other files are `written`, as canonical JSON."""
+    case = cleared.case
+    if case.trap is None or case.shipped is None or case.sequence is None:
+        raise TypeError("a cleared case has all its stages")
+    document: dict[str, object] = {
+        "schema": SCHEMA,
+        "schema_version": SCHEMA_VERSION,
+        "wellseq": __version__,
+        "sequence": case.sequence.name,
+        "lets": dict(case.sequence.lets),
+        "each": [str(value) for value in case.sequence.each_values],
+        "sources": [_source(copy.path, copy.written_as, copy.content) for copy in copies(case)],
+        "files": {
+            path: {"sha256": one.sha256, "bytes": one.size} for path, one in written.items()
+        },
+        "trap": trap_summary(case.trap),
+        "limits": case.trap.margins.model_dump(mode="json"),
+        "checks": list(case.ran),
+        "verdicts": {
+            verdict.value: sum(finding.verdict is verdict for finding in case.findings)
+            for verdict in (Verdict.PASS, Verdict.ALLOWED)
+        },
+        "allowances": allowances(case),
+        "assumed": assumed(case),
+        "not_examined": list(NOT_EXAMINED),
+        "blocks": [_block(block) for block in case.shipped.blocks],
+        "end": _end(case.trap, case.shipped),
+        "roundings_largest": _roundings(case),
+        "content_id": content_id(case.shipped),
+    }
+    document["digest"] = hashlib.sha256(_canonical(document)).hexdigest()
+    return _canonical(document)
+
+
+def _canonical(document: Mapping[str, object]) -> bytes:
+    text = json.dumps(document, indent=1, sort_keys=True, ensure_ascii=False, allow_nan=False)
+    return f"{text}\n".encode()
+
+
+def _source(path: str, written_as: str, content: bytes) -> dict[str, str]:
+    return {
+        "file": path,
+        "from_sequence": written_as,
+        "sha256": hashlib.sha256(content).hexdigest(),
+    }
+
+
+def _block(one: ShippedBlock) -> dict[str, object]:
+    block = one.block
+    return {
+        "index": block.index + 1,
+        "name": block.name,
+        "trigger": block.trigger,
+        "within_s": exact(block.within_s),
+        "latency_s": exact(block.first_row_s),
+        "jitter_s": exact(block.jitter_s),
+        "tick_s": exact(one.tick_s),
+        "tick_decimal_s": decimal(one.tick_s),
+        "rows": len(one.ticks),
+        "duration_s": exact(block.duration_s),
+        "duration_decimal_s": decimal(block.duration_s),
+        "table": table_name(block),
+        "drives": drives_name(block) if block.drives else None,
+        "strays_V": _strays(one),
+    }
+
+
+def _strays(one: ShippedBlock) -> dict[str, float]:
+    """Per output that moves, the furthest that its rows stray from the wish, V, half a code apart."""
+    found: dict[str, float] = {}
+    for stray in one.strays:
+        found[stray.output] = max(found.get(stray.output, 0.0), float(stray.volts))
+    return found
+
+
+def _end(trap: Trap, shipped: Shipped) -> dict[str, object]:
+    """What the last row of the last block leaves standing."""
+    last = shipped.blocks[-1]
+    return {
+        "codes": dict(zip(shipped.converters, last.codes[-1].tolist(), strict=True)),
+        "levels": dict(zip(shipped.switches, last.levels[-1].tolist(), strict=True)),
+        "states": {
+            name: trap.line(name).states[state]
+            for name, state in zip(shipped.lines, last.states[-1].tolist(), strict=True)
+        },
+    }
+
+
+def _roundings(case: Case) -> list[dict[str, object]]:
+    return [
+        {
+            "block": block + 1,
+            "output": rounding.output,
+            "asked_s": exact(rounding.asked_s),
+            "emitted_s": exact(rounding.emitted_s),
+            "error_s": exact(Fraction(rounding.error_s)),
+            "step_number": rounding.number,
+        }
+        for block, rounding in roundings(case)[:ROUNDINGS_KEPT]
+    ]

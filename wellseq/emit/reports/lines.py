@@ -1,0 +1,52 @@
+"""Findings as GNU lines: `file:line:column: severity: message [name]`, one line each.
+
+Lines and columns count from 1; columns are display columns with tab stops every eight (GNU Coding
+Standards, "Formatting Error Messages").  Passing readings are not listed.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Sequence
+
+from wellseq.base.finding import Finding, Verdict
+from wellseq.base.names import printable
+from wellseq.emit.examined import Examined
+from wellseq.emit.excerpt import display_column, source_line
+from wellseq.emit.formats import Options
+
+_SEVERITY = {Verdict.FAIL: "error", Verdict.UNSURE: "error", Verdict.ALLOWED: "note"}
+
+
+def report(things: Sequence[Examined], options: Options) -> str:
+    """All findings that are not passes, then for each file what was not examined, or that all was."""
+    return "".join(f"{line}\n" for thing in things for line in _lines(thing, options))
+
+
+def _lines(thing: Examined, options: Options) -> Iterator[str]:
+    for finding in thing.having(Verdict.FAIL, Verdict.UNSURE, Verdict.ALLOWED):
+        yield _line(thing, finding, _SEVERITY[finding.verdict])
+    if options.margins:
+        for finding in thing.by_margin():
+            yield _line(thing, finding, "note")
+    shown = printable(thing.shown)
+    for name, why in thing.not_run:
+        yield f"{shown}:1:1: error: not examined: {_flat(why)} [{name}]"
+    if thing.clear:
+        yield f"{shown}:1:1: note: {len(thing.ran)} checks ran, nothing stands in the way [cleared]"
+
+
+def _line(thing: Examined, finding: Finding, severity: str) -> str:
+    place = finding.place
+    written = source_line(thing.sources, place)
+    column = display_column(written, place.column) if written is not None else place.column
+    unsure = "not decided: " if finding.verdict is Verdict.UNSURE else ""
+    passed = "passes: " if finding.verdict is Verdict.PASS else ""
+    message = f"{unsure}{passed}{_flat(finding.message)}"
+    if finding.verdict is Verdict.ALLOWED:
+        message += f" (allowed: {_flat(finding.reason)})"
+    where = f"{printable(place.file)}:{place.line}:{column}"
+    return f"{where}: {severity}: {message} [{finding.name}]"
+
+
+def _flat(text: str) -> str:
+    return printable(" ".join(text.split()))

@@ -1,0 +1,141 @@
+"""The bytes of a block's CSV → whole numbers per column, each cell asked for as it must be.
+
+A table needs no quotes, no blanks and no comments, so none are taken.  The volts beside a code must
+be the shortest decimal of the float nearest to the exact rational gain * (low + code * lsb) + offset.
+"""
+
+from __future__ import annotations
+
+import re
+from array import array
+from collections.abc import Iterator
+from dataclasses import dataclass
+
+from wellseq.reread.plan import BlockPlan, Converter, Plan
+from wellseq.reread.reading import Unsound
+
+UNSOUND = "table-unsound"
+CHUNK_ROWS = 65536
+WHOLE = re.compile(r"0|[1-9][0-9]{0,17}")
+
+
+@dataclass(frozen=True, slots=True)
+class Table:
+    """One block as read: ticks (rows,), and per column its codes, levels or states (rows,)."""
+
+    block: BlockPlan
+    ticks: array[int]
+    columns: dict[str, array[int]]
+
+
+def read_table(content: bytes, plan: Plan, block: BlockPlan) -> Table:
+    """Read a whole table; raises Unsound at its first line that is not as it must be."""
+    file = block.table
+    lines = _lines(content, file)
+    head = _head(plan)
+    if lines[0] != ",".join(head):
+        raise Unsound(UNSOUND, file, "the first line does not name the columns of this trap")
+    rows = lines[1:]
+    if len(rows) != block.rows:
+        raise Unsound(
+            UNSOUND, file, f"{len(rows)} rows are here, {block.rows} were written", len(lines)
+        )
+    table = Table(block, array("q"), {name: array("q") for name in _names(plan)})
+    for start in range(0, len(rows), CHUNK_ROWS):
+        _take(table, plan, rows[start : start + CHUNK_ROWS], len(head), start + 2)
+    _in_order(table)
+    return table
+
+
+def _lines(content: bytes, file: str) -> list[str]:
+    try:
+        text = content.decode("utf-8")
+    except UnicodeDecodeError as error:
+        raise Unsound(UNSOUND, file, "this is not UTF-8 text") from error
+    if '"' in text:
+        raise Unsound(UNSOUND, file, "a table holds no quotes")
+    lines = text.split("\r\n")
+    if lines[-1] != "" or len(lines) < 3:
+        raise Unsound(UNSOUND, file, "the last line is cut off", len(lines))
+    if text.count("\r") != len(lines) - 1 or text.count("\n") != len(lines) - 1:
+        raise Unsound(UNSOUND, file, "a line does not end in CR LF")
+    return lines[:-1]
+
+
+def _head(plan: Plan) -> list[str]:
+    head = ["tick"]
+    for converter in plan.converters:
+        head += [f"{converter.name}.code", f"{converter.name}.V"]
+    head += [f"{switch.name}.level" for switch in plan.switches]
+    return head + [line.name for line in plan.lines]
+
+
+def _names(plan: Plan) -> Iterator[str]:
+    for output in (*plan.converters, *plan.switches, *plan.lines):
+        yield output.name
+
+
+def _take(table: Table, plan: Plan, rows: list[str], width: int, line: int) -> None:
+    """Add a run of rows; `line` is the number of the first one in the file."""
+    file = table.block.table
+    cells = [row.split(",") for row in rows]
+    for at, row in enumerate(cells):
+        if len(row) != width:
+            raise Unsound(UNSOUND, file, f"{len(row)} cells stand here, not {width}", line + at)
+    columns = iter(zip(*cells, strict=True))
+    table.ticks.extend(_whole(next(columns), file, "tick", 2**62))
+    for converter in plan.converters:
+        codes, volts = next(columns), next(columns)
+        numbers = _whole(codes, file, converter.name, converter.code_max)
+        _agree(converter, set(zip(codes, volts, strict=True)), file)
+        table.columns[converter.name].extend(numbers)
+    for switch in plan.switches:
+        numbers = _whole(next(columns), file, switch.name, len(switch.levels) - 1)
+        table.columns[switch.name].extend(numbers)
+    for one in plan.lines:
+        table.columns[one.name].extend(_states(next(columns), one.states, file, one.name))
+
+
+def _whole(texts: tuple[str, ...], file: str, name: str, most: int) -> list[int]:
+    known: dict[str, int] = {}
+    for text in set(texts):
+        if not WHOLE.fullmatch(text) or int(text) > most:
+            raise Unsound(UNSOUND, file, f"'{text[:40]}' is no value of {name}, 0 to {most}")
+        known[text] = int(text)
+    return [known[text] for text in texts]
+
+
+def _states(
+    texts: tuple[str, ...], states: tuple[str, ...], file: str, name: str
+) -> list[int]:
+    known = {state: index for index, state in enumerate(states)}
+    strange = set(texts) - set(known)
+    if strange:
+        raise Unsound(UNSOUND, file, f"'{min(strange)[:40]}' is no state of {name}")
+    return [known[text] for text in texts]
+
+
+def _agree(converter: Converter, pairs: set[tuple[str, str]], file: str) -> None:
+    """Every code and the volts beside it must say the same."""
+    for code, volts in pairs:
+        exact = converter.volts(int(code))
+        right = repr(exact.numerator / exact.denominator)
+        if volts != right:
+            raise Unsound(
+                UNSOUND,
+                file,
+                f"code {code} of {converter.name} is {right} V, the table says '{volts[:40]}'",
+            )
+
+
+def _in_order(table: Table) -> None:
+    ticks, block = table.ticks, table.block
+    if ticks[0] != 0:
+        raise Unsound(UNSOUND, block.table, "the first row is not at tick 0", 2)
+    for at in range(1, len(ticks)):
+        if ticks[at] <= ticks[at - 1]:
+            raise Unsound(UNSOUND, block.table, "ticks do not rise here", at + 2)
+    if ticks[-1] * block.tick_s < block.duration_s:
+        raise Unsound(
+            UNSOUND, block.table, "the last row comes before the end of the block", len(ticks) + 1
+        )

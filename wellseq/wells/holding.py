@@ -1,0 +1,216 @@
+"""One well over one segment: prove that it holds, and certify how deep.
+
+The segment is cut where one region cannot hold the minimum throughout, or where what is taken off
+for the shape of the motion is large; the parts that come out are proved one after the other.  From
+each certified depth everything is taken off that can make an electrode differ from the wish: for a
+cause with a deviation d_e per electrode, at most sum_e d_e osc_e, osc_e being the greatest
+|phi_e(barrier) - phi_e(well)| over the proved regions.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass, replace
+from fractions import Fraction
+
+import numpy as np
+import numpy.typing as npt
+
+from wellseq.fields.certificate import Certificate, SideBound, certify, oscillation
+from wellseq.fields.field import Field
+from wellseq.fields.following import Proven, prove
+from wellseq.timeline.motion import Segment
+from wellseq.wells.losses import losses
+from wellseq.wells.wells import SideDepth
+
+Vector = npt.NDArray[np.float64]
+CUTS_MAX = 12
+"""How often a segment may be halved before the proof gives up."""
+LOOSE_SHARE = 0.02
+LOOSE_V = 1e-3
+"""A part is cut once more while the chord's loss exceeds both of these (share of the depth, V)."""
+RIPPLE_SHARE = 0.05
+RIPPLE_V = 1e-3
+"""Ripple of a flat bottom that is merged and taken off: the greater of these."""
+
+
+@dataclass(frozen=True, slots=True)
+class Part:
+    """A part of a segment on which one region holds the minimum.
+
+    `window_s` in block time; base (electrodes,), moves (progresses, electrodes) in V.
+    """
+
+    window_s: tuple[Fraction, Fraction]
+    base: Vector
+    moves: Vector
+    segment: Segment
+
+    def corners(self) -> Vector:
+        """Voltages (corners, electrodes) where every progress is 0 or 1; the start comes first."""
+        found = self.base.reshape(1, -1)
+        for move in self.moves:
+            found = np.concatenate([found, found + move])
+        return found
+
+    def cut(self) -> tuple[Part, Part] | None:
+        """Two halves: in progress where there is just one and it is exact, else in time."""
+        start_s, end_s = self.window_s
+        middle_s = (start_s + end_s) / 2
+        if len(self.moves) == 1 and not np.any(self.segment.shape_V):
+            half = self.moves / 2
+            first = replace(self, window_s=(start_s, middle_s), moves=half)
+            return first, replace(
+                self, window_s=(middle_s, end_s), base=self.base + half[0], moves=half
+            )
+        halves = self.segment.cut()
+        if halves is None:
+            return None
+        return part_of(halves[0]), part_of(halves[1])
+
+
+def part_of(segment: Segment) -> Part:
+    """A whole segment as one part."""
+    return Part((segment.start_s, segment.end_s), segment.base, segment.moves, segment)
+
+
+@dataclass(frozen=True, slots=True)
+class Hold:
+    """A proved part: the regions (m), where the minimum is at its ends, and both sides' depths."""
+
+    window_s: tuple[Fraction, Fraction]
+    well_m: tuple[float, float]
+    from_m: float
+    to_m: float
+    left: SideDepth
+    right: SideDepth
+    trap_V: float
+
+
+@dataclass(frozen=True, slots=True)
+class Lost:
+    """A part on which no region could be proved to hold the minimum."""
+
+    window_s: tuple[Fraction, Fraction]
+    from_m: float
+    part: Part
+
+
+class Holding:
+    """Proves and certifies; remembers what it has done, since sequences repeat themselves."""
+
+    def __init__(self, field: Field, patch_V: float) -> None:
+        self.field = field
+        self.patch_V = patch_V
+        self._known: dict[bytes, tuple[Proven, Certificate, float] | None] = {}
+
+    def hold(
+        self, sign: int, z_m: float, segment: Segment, floor_V: float
+    ) -> Iterator[Hold | Lost]:
+        """Follow a well through a segment; stops after the first part that is lost."""
+        waiting = [(part_of(segment), 0)]
+        while waiting:
+            part, cuts = waiting.pop()
+            known = self._solve(sign, z_m, part)
+            halves = part.cut() if cuts < CUTS_MAX and self._loose(part, known, floor_V) else None
+            if halves is not None:
+                waiting += [(halves[1], cuts + 1), (halves[0], cuts + 1)]
+            elif known is None:
+                yield Lost(part.window_s, z_m, part)
+                return
+            else:
+                hold = self._hold(part, *known)
+                z_m = hold.to_m
+                yield hold
+
+    def _loose(
+        self, part: Part, known: tuple[Proven, Certificate, float] | None, floor_V: float
+    ) -> bool:
+        if known is None:
+            return True
+        shape_V = part.segment.shape_V
+        if not np.any(shape_V):
+            return False
+        proven, bound, _ = known
+        weights = oscillation(self.field, proven.well, proven.left, proven.right)
+        depth = min(bound.left.lower_V, bound.right.lower_V)
+        return float(shape_V @ weights) > max(LOOSE_V, LOOSE_SHARE * max(depth - floor_V, 0.0))
+
+    def _solve(self, sign: int, z_m: float, part: Part) -> tuple[Proven, Certificate, float] | None:
+        deviation = part.segment.deviation_V()
+        key = b"".join(
+            (
+                sign.to_bytes(1, "little", signed=True),
+                np.float64(z_m).tobytes(),
+                part.base.tobytes(),
+                part.moves.tobytes(),
+                deviation.tobytes(),
+            )
+        )
+        if key not in self._known:
+            self._known[key] = self._prove(sign, z_m, part, deviation)
+        return self._known[key]
+
+    def _prove(
+        self, sign: int, z_m: float, part: Part, deviation: Vector
+    ) -> tuple[Proven, Certificate, float] | None:
+        corners = part.corners()
+        proven = prove(
+            self.field, sign, corners, z_m, deviation, ripple_V=RIPPLE_V, ripple_share=RIPPLE_SHARE
+        )
+        if proven is None:
+            return None
+        bound = certify(
+            self.field, sign, part.base, part.moves, proven.well, proven.left, proven.right
+        )
+        last = len(self.field.z_m) - 1
+        outside = certify(
+            self.field,
+            sign,
+            part.base,
+            part.moves,
+            proven.well,
+            (0, proven.well[0]),
+            (proven.well[1], last),
+        )
+        return proven, bound, min(outside.left.lower_V, outside.right.lower_V)
+
+    def _hold(self, part: Part, proven: Proven, bound: Certificate, trap_V: float) -> Hold:
+        z_m = self.field.z_m
+        left = self._side(part, proven, bound.left, proven.left)
+        right = self._side(part, proven, bound.right, proven.right)
+        taken = max(left.losses.total_V, right.losses.total_V)
+        return Hold(
+            part.window_s,
+            (float(z_m[proven.well[0]]), float(z_m[proven.well[1]])),
+            proven.z_start_m,
+            proven.z_end_m,
+            left,
+            right,
+            trap_V - taken,
+        )
+
+    def _side(
+        self, part: Part, proven: Proven, bound: SideBound, region: tuple[int, int]
+    ) -> SideDepth:
+        segment = part.segment
+        weights = oscillation(self.field, proven.well, region, None)
+        taken = losses(
+            segment,
+            weights,
+            patch_V=self.patch_V,
+            basis_error=self.field.error_V_per_V,
+            ripple_V=proven.ripple_V,
+        )
+        share = float(np.mean(bound.progress)) if bound.progress else 0.0
+        start_s, end_s = map(float, part.window_s)
+        z_m = self.field.z_m
+        return SideDepth(
+            certified_V=bound.lower_V - taken.total_V,
+            best_V=bound.upper_V,
+            losses=taken,
+            at_s=start_s + share * (end_s - start_s),
+            barrier_m=bound.barrier_z_m,
+            well_m=bound.well_z_m,
+            region_m=(float(z_m[region[0]]), float(z_m[region[1]])),
+        )
