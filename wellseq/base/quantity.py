@@ -2,7 +2,8 @@
 
 Every number of a sequence or trap file is an exact rational until it leaves this floor, so that
 `20 us` is twenty whole microseconds.  `energy` (eV), `temperature` (K) and `potential` (V) are
-kinds of their own and never mix.  SI prefixes: BIPM, The International System of Units, 9th ed., 2019.
+kinds of their own and never mix.  SI prefixes: BIPM, The International System of Units, 9th ed.,
+2019.
 """
 
 from __future__ import annotations

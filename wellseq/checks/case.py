@@ -8,7 +8,7 @@ from typing import TypeVar
 
 from wellseq.base.finding import Finding, Mistake, Origin
 from wellseq.base.place import Place
-from wellseq.model.sequence import Sequence
+from wellseq.model.sequence import Sequence, SourceFile
 from wellseq.model.trap import Trap
 from wellseq.timeline.shipped import Shipped
 from wellseq.timeline.timeline import Timeline
@@ -30,7 +30,8 @@ class Case:
 
     `mistakes` are those of the text, the trap file and the drawing.  `findings` are judged, passes
     included, in order of place.  `ran` and `not_run` name the checks that ran and, with the cause,
-    those that had nothing to read.
+    those that had nothing to read.  `sources` are all files that were read, also of a broken text.
+    `each` is the one value of an `each` that is played, in base units; empty when all are.
     """
 
     path: Path
@@ -44,6 +45,8 @@ class Case:
     findings: tuple[Finding, ...] = ()
     ran: tuple[str, ...] = ()
     not_run: tuple[tuple[str, str], ...] = ()
+    sources: tuple[SourceFile, ...] = ()
+    each: str = ""
 
     def with_findings(
         self,

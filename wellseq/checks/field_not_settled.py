@@ -32,7 +32,7 @@ def read(case: Case) -> Iterator[Reading | Mistake]:
         yield Reading(
             value=errors[index],
             limit=LIMIT,
-            message=f"the field's error in the depth of {one.cloud} is {{value}}, at most {{limit}}",
+            message=f"the field's error in {one.cloud}'s depth is {{value}}, at most {{limit}}",
             origin=case.origin(one.number),
             subject=one.cloud,
             block=case.block_name(one.block),

@@ -28,12 +28,13 @@ TOUCH = at_most(60.0, "V")
 def read(case: Case) -> Iterator[Reading | Mistake]:
     """The size of each hazardous output's last voltage, V, with its spread of calibration."""
     yield from mistakes_named(case, "hazardous-output-live-at-end")
-    if not reached(case.shipped).blocks:
+    shipped = reached(case.shipped)
+    if not shipped.blocks:
         return
     movers = _last_movers(reached(case.timeline))
     for output in reached(case.trap).outputs:
         if output.hazardous:
-            yield _reading(case, reached(case.trap), reached(case.shipped), output, movers)
+            yield _reading(case, reached(case.trap), shipped, output, movers)
 
 
 def _reading(

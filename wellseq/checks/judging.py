@@ -164,7 +164,7 @@ def _worded(reading: Reading) -> str:
 
 
 def _allow(case: Case, found: list[Finding]) -> list[Finding]:
-    """The findings after the allowances: an allowance covers its name at its step, in every pass."""
+    """The findings after the allowances; one covers its name at its step, in every pass."""
     if case.sequence is None:
         return found
     reasons: dict[tuple[str, Place], str] = {}

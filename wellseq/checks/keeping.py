@@ -16,14 +16,14 @@ from wellseq.base.finding import Limit, Reading, Verdict
 Floats = npt.NDArray[np.float64]
 
 FIGURES = 12
-"""Significant figures of a quotient that is judged: a ramp written exactly at a slew must not fail
-by the dust of a division."""
+"""Significant figures of a quotient or a sum that is judged, and of its limit: a ramp written exactly
+at a slew must not fail by the dust of a division."""
 
 
 def figures(values: npt.ArrayLike) -> Floats:
-    """Values rounded to FIGURES significant figures; NaN and infinity stay."""
+    """Values rounded to FIGURES significant figures; NaN, infinity and what is tiny stay."""
     array = np.asarray(values, dtype=float)
-    sound = np.isfinite(array) & (array != 0)
+    sound = (np.abs(array) > 1e-200) & (np.abs(array) < 1e200)
     size = np.floor(np.log10(np.abs(np.where(sound, array, 1.0))))
     scale = 10.0 ** np.abs(FIGURES - 1 - size)
     up = FIGURES - 1 - size >= 0

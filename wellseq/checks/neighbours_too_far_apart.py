@@ -1,15 +1,16 @@
 """Two electrodes side by side stand further apart in voltage than their gap bears.
 
-On a segment of the motion the wished voltages are base + Σ p_k moves_k with every p_k from 0 to 1, so
-that the difference of two electrodes, being affine in each p_k, is greatest in size where each p_k is
-0 or 1.  With one progress both ends are surely reached; with several, the ends of the segment are,
-and the worst corner may be.  What the electrodes may differ from their wish is the uncertainty.
+On a segment of the motion the wished voltages are base + Σ p_k moves_k with every p_k from 0 to 1,
+so that the difference of two electrodes, being affine in each p_k, is greatest in size where each
+p_k is 0 or 1.  With one progress both ends are surely reached; with several, the ends of the
+segment are, and the worst corner may be.  What the electrodes may differ from their wish is the uncertainty.
 """
 
 from __future__ import annotations
 
 from collections.abc import Iterator
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 
@@ -19,7 +20,8 @@ from wellseq.checks.keeping import Floats, figures, telling
 from wellseq.checks.numbers import amount
 from wellseq.checks.written import mistakes_named
 from wellseq.model.trap import Trap
-from wellseq.timeline.motion import Carry, Segment, segments
+from wellseq.timeline.deviations import Carry
+from wellseq.timeline.motion import Segment, segments
 from wellseq.timeline.timeline import Block
 
 SAYS = "Adjacent electrodes stand further apart in voltage than the trap file allows."
@@ -40,12 +42,13 @@ class _Span:
 def read(case: Case) -> Iterator[Reading | Mistake]:
     """The greatest difference, V, of each two adjacent electrodes on each stretch of motion."""
     yield from mistakes_named(case, "neighbours-too-far-apart")
-    if len(reached(case.trap).electrodes) < 2:
+    trap = reached(case.trap)
+    if len(trap.electrodes) < 2:
         return
     carry = Carry()
     for shipped in reached(case.shipped).blocks:
-        drives = _Drives(reached(case.trap), shipped.block)
-        spans = [_span(one, drives) for one in segments(reached(case.trap), shipped, carry)]
+        drives = _Drives(trap, shipped.block)
+        spans = [_span(one, drives) for one in segments(trap, shipped, carry)]
         if spans:
             yield from _of_block(case, shipped.block.name, spans)
 
@@ -90,14 +93,14 @@ class _Drives:
 
 
 def _of_block(case: Case, block: str, spans: list[_Span]) -> Iterator[Reading]:
-    names = [electrode.name for electrode in reached(case.trap).electrodes]
-    pairs = list(zip(names, names[1:], strict=False))
-    bounds = [reached(case.trap).margins.difference_V(*pair) for pair in pairs]
+    trap = reached(case.trap)
+    pairs = list(pairwise(electrode.name for electrode in trap.electrodes))
+    bounds = figures([trap.margins.difference_V(*pair) for pair in pairs])
     low = np.stack([span.surely_V for span in spans])
     high = np.stack([span.perhaps_V for span in spans])
     groups = np.broadcast_to(np.arange(len(pairs)), low.shape)
     steps = np.broadcast_to(np.array([[span.number] for span in spans]), low.shape)
-    limits = np.broadcast_to(np.array(bounds), low.shape)
+    limits = np.broadcast_to(bounds, low.shape)
     flat = [array.ravel() for array in (low, high, groups, steps, limits)]
     for index in telling(at_most(0.0, "V"), *flat):
         row, pair = divmod(index, len(pairs))
@@ -107,7 +110,7 @@ def _of_block(case: Case, block: str, spans: list[_Span]) -> Iterator[Reading]:
             value=(least + most) / 2,
             uncertainty=(most - least) / 2,
             between=(least, most),
-            limit=at_most(bounds[pair], "V"),
+            limit=at_most(float(bounds[pair]), "V"),
             message=(
                 f"{one} and {other} side by side stand up to {amount(most, 'V')} apart, "
                 "at most {limit}"

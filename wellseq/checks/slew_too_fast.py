@@ -2,8 +2,8 @@
 
 Two things are measured, both in V/s at the electrode.  The wish: the greatest slope of each piece.
 What is played: on a card that holds between rows each change of code must be over before the
-output's next change; on a card that draws lines, the slope from row to row.  Both are found from the
-rows alone, less one code, which is what rounding two voltages to codes can add.
+output's next change; on a card that draws lines, the slope from row to row.  Both are found from
+the rows alone, less one code, which is what rounding two voltages to codes can add.
 """
 
 from __future__ import annotations
@@ -41,7 +41,8 @@ def read(case: Case) -> Iterator[Reading | Mistake]:
 
 
 def _of_wishes(case: Case) -> Iterator[Reading]:
-    slews = {o.name: o.slew_V_per_s for o in reached(case.trap).outputs if isinstance(o, Converter)}
+    outputs = reached(case.trap).outputs
+    slews = {o.name: _slew_V_per_s(o) for o in outputs if isinstance(o, Converter)}
     for block in reached(case.timeline).blocks:
         pieces = block.pieces
         swings = np.array([abs(piece.to_V - piece.from_V) for piece in pieces])
@@ -64,6 +65,10 @@ def _of_wishes(case: Case) -> Iterator[Reading]:
             )
 
 
+def _slew_V_per_s(converter: Converter) -> float:
+    return float(figures(converter.slew_V_per_s))
+
+
 @dataclass(frozen=True, slots=True)
 class _Played:
     """The steepest change of one output within one of its pieces; times in s of the block."""
@@ -80,7 +85,7 @@ def _of_rows(case: Case) -> Iterator[Reading]:
         assert isinstance(converter, Converter)
         played = list(_played(reached(case.shipped), column, converter))
         slopes = figures([one.slope_V_per_s for one in played])
-        limit = at_most(converter.slew_V_per_s, "V/s")
+        limit = at_most(_slew_V_per_s(converter), "V/s")
         groups = numbered(one.block.block.name for one in played)
         for index in telling(limit, slopes, slopes, groups, [one.number for one in played]):
             one = played[index]

@@ -59,12 +59,11 @@ def nearness(finding: Finding) -> tuple[float, object, str, str]:
 
 def examined(case: Case) -> Examined:
     """The findings of one sequence file, as reports want them."""
-    files = case.sequence.sources if case.sequence is not None else ()
     return Examined(
         shown=case.shown,
         findings=case.findings,
         ran=case.ran,
         not_run=case.not_run,
         duration_s=float(case.timeline.duration_s) if case.timeline is not None else None,
-        sources={file.shown: file.content.decode("utf-8-sig", "replace") for file in files},
+        sources={file.shown: file.content.decode("utf-8-sig", "replace") for file in case.sources},
     )

@@ -6,6 +6,8 @@ seconds.
 
 from __future__ import annotations
 
+from itertools import pairwise
+
 from wellseq.emit.blocks import exact
 from wellseq.model.trap import Converter, Switch, Trap
 from wellseq.timeline.gates import WHOLE_EDGE
@@ -44,7 +46,7 @@ def trap_summary(trap: Trap) -> dict[str, object]:
                 "electrodes": [one.name, other.name],
                 "limit_V": trap.margins.difference_V(one.name, other.name),
             }
-            for one, other in zip(electrodes, electrodes[1:], strict=False)
+            for one, other in pairwise(electrodes)
         ],
     }
 

@@ -1,4 +1,4 @@
-"""`manifest.json`: what a published folder is, made of what, for which hardware, within which limits.
+"""`manifest.json`: what a published folder is, made of what, for which hardware, in which limits.
 
 It holds the SHA-256 of every other file, and of itself without that one entry (`digest`), so that
 any change anywhere shows.  That is a seal against accidents, not a signature against forgers.
@@ -53,11 +53,9 @@ def manifest(cleared: Cleared, written: Mapping[str, Written]) -> bytes:
         "wellseq": __version__,
         "sequence": case.sequence.name,
         "lets": dict(case.sequence.lets),
-        "each": [str(value) for value in case.sequence.each_values],
+        "each": case.each,
         "sources": [_source(copy.path, copy.written_as, copy.content) for copy in copies(case)],
-        "files": {
-            path: {"sha256": one.sha256, "bytes": one.size} for path, one in written.items()
-        },
+        "files": {path: {"sha256": one.sha256, "bytes": one.size} for path, one in written.items()},
         "trap": trap_summary(case.trap),
         "limits": case.trap.margins.model_dump(mode="json"),
         "checks": list(case.ran),
@@ -111,7 +109,7 @@ def _block(one: ShippedBlock) -> dict[str, object]:
 
 
 def _strays(one: ShippedBlock) -> dict[str, float]:
-    """Per output that moves, the furthest that its rows stray from the wish, V, half a code apart."""
+    """Per output that moves, how far its rows stray from the wish at most, V; half a code apart."""
     found: dict[str, float] = {}
     for stray in one.strays:
         found[stray.output] = max(found.get(stray.output, 0.0), float(stray.volts))

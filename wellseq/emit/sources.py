@@ -1,8 +1,8 @@
 """Where the exact copies of the sources stand inside a published folder.
 
 The copies keep their places relative to one another, so the folder's own copy of the sequence
-compiles again.  Names are taken relative to the sequence file's folder, which makes them independent
-of where the program was started.
+compiles again.  Names are taken relative to the sequence file's folder, so that they do not depend
+on where the program was started.
 """
 
 from __future__ import annotations
@@ -19,11 +19,17 @@ _ANYWHERE = "/" + "/".join(["up"] * 64)
 
 @dataclass(frozen=True, slots=True)
 class Copy:
-    """One source: its path inside the folder, its path as seen from the sequence, its bytes."""
+    """One source: name as shown, path inside the folder and as seen from the sequence, bytes."""
 
+    shown: str
     path: str
     written_as: str
     content: bytes
+
+
+def written_names(case: Case) -> dict[str, str]:
+    """File name as shown → path as seen from the sequence, which no working directory changes."""
+    return {copy.shown: copy.written_as for copy in copies(case)}
 
 
 def copies(case: Case) -> tuple[Copy, ...]:
@@ -42,7 +48,7 @@ def copies(case: Case) -> tuple[Copy, ...]:
     found = []
     for shown in order:
         inside = posixpath.normpath(posixpath.join(*[below] * ups, names[shown]))
-        found.append(Copy(f"{FOLDER}/{inside}", names[shown], files[shown]))
+        found.append(Copy(shown, f"{FOLDER}/{inside}", names[shown], files[shown]))
     return tuple(found)
 
 

@@ -4,15 +4,17 @@ from __future__ import annotations
 
 from wellseq.base.finding import Verdict
 from wellseq.checks.case import Case
+from wellseq.emit.sources import written_names
 from wellseq.model.effects import Assumed
 from wellseq.timeline.shipped import Rounding
 
 
 def allowances(case: Case) -> list[dict[str, object]]:
-    """Every allowance as plain values: name, reason, where it is, the steps and how much it covers."""
+    """Every allowance as plain values: name, reason, place, its steps, how much it covers."""
     if case.sequence is None:
         return []
-    found = []
+    found: list[dict[str, object]] = []
+    names = written_names(case)
     origins = case.timeline.origins if case.timeline is not None else ()
     for one in case.sequence.allowances:
         covered = [
@@ -26,11 +28,14 @@ def allowances(case: Case) -> list[dict[str, object]]:
             {
                 "name": one.name,
                 "reason": one.reason,
+                "file": names.get(one.place.file, one.place.file),
                 "line": one.place.line,
                 "column": one.place.column,
                 "covers": len(covered),
                 "steps": [
-                    number for number, origin in enumerate(origins) if origin.place == one.step_place
+                    number
+                    for number, origin in enumerate(origins)
+                    if origin.place == one.step_place
                 ],
             }
         )

@@ -9,7 +9,17 @@ from wellseq.base.finding import Mistake
 from wellseq.base.names import printable
 from wellseq.base.place import Place
 from wellseq.model.reporter import Reporter
-from wellseq.text.tree import Assignment, Block, Call, Name, Number, Operand, Statement, String, Tree
+from wellseq.model.steps import verbs
+from wellseq.text.tree import (
+    Assignment,
+    Block,
+    Call,
+    Name,
+    Number,
+    Statement,
+    String,
+    Tree,
+)
 
 VERSION = 1
 EXAMPLES = {
@@ -46,36 +56,45 @@ class Header:
     sequence: Statement | None = None
 
 
-def first(operands: tuple[Operand, ...], kind: type[Operand] | tuple[type, ...]) -> bool:
-    """Whether the first operand is of a kind."""
-    return bool(operands) and isinstance(operands[0], kind)
-
-
-def fits(statement: Statement, reporter: Reporter, *shape: type | tuple[type, ...], **may: bool) -> bool:
+def fits(
+    statement: Statement,
+    reporter: Reporter,
+    *shape: type | tuple[type, ...],
+    value: bool = False,
+    clauses: bool = False,
+    label: bool = False,
+) -> bool:
     """Whether a statement has operands of this shape and nothing else; reports it when not.
 
-    `value`, `label` and `clauses` allow what most statements do not take.
+    With `value` and `clauses` it must have these, with `label` it may have one.
     """
     verb = statement.verb.text if statement.verb is not None else ""
     for allowance in statement.allowances:
         message = f"`allow` stands after one step, not after `{verb}`"
         reporter.add(Mistake("syntax", allowance.place, message))
-    if statement.label is not None and not may.get("label"):
+    if statement.label is not None and not label:
         message = f"`{verb}` takes no label"
         reporter.add(Mistake("syntax", statement.label.place, message, "a label names a step"))
     given = statement.operands
     right = (
         len(given) == len(shape)
         and all(isinstance(item, kind) for item, kind in zip(given, shape, strict=True))
-        and (statement.value is not None) == may.get("value", False)
-        and bool(statement.clauses) == may.get("clauses", False)
+        and (statement.value is not None) == value
+        and bool(statement.clauses) == clauses
         and not statement.words
     )
     if not right:
-        message = f"`{verb}` is written: {EXAMPLES[verb]}"
         place = statement.verb.place if statement.verb is not None else statement.place
-        reporter.add(Mistake("syntax", place, message))
+        reporter.add(Mistake("syntax", place, _written(verb, statement, bool(clauses))))
     return right
+
+
+def _written(verb: str, statement: Statement, clauses: bool) -> str:
+    how = f"`{verb}` is written: {EXAMPLES[verb]}"
+    if statement.clauses and not clauses:
+        word = statement.clauses[0].word.text
+        return f"'{word}' is a word of the language and is no part of this; {how}"
+    return how
 
 
 def read_header(tree: Tree, reporter: Reporter) -> Header:
@@ -99,8 +118,6 @@ def read_header(tree: Tree, reporter: Reporter) -> Header:
 
 
 def _misplaced(item: Statement | Assignment, verb: str, reporter: Reporter) -> None:
-    from wellseq.model.steps import verbs
-
     if verb in verbs() or verb in INSIDE:
         message = f"`{verb}` stands inside a sequence or a procedure"
         reporter.add(Mistake("syntax", item.place, message, EXAMPLES["sequence"]))

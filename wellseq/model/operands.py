@@ -87,11 +87,15 @@ def _checked(slot: Slot, operand: Operand, names: Names, chosen: Chosen) -> Valu
     return value if sound else UNKNOWN
 
 
+def _no_spread(slot: Slot, operand: Operand, names: Names) -> Unknown:
+    return names.report("unit-mismatch", operand.place, f"{_said(slot)} takes a value without ±")
+
+
 def _quantity(slot: Slot, operands: tuple[Operand, ...], names: Names, chosen: Chosen) -> object:
     operand = operands[0]
     value = _checked(slot, operand, names, chosen)
     if isinstance(value, Spread):
-        return names.report("unit-mismatch", operand.place, f"{_said(slot)} takes a value without ±")
+        return _no_spread(slot, operand, names)
     if isinstance(value, Unknown):
         return value
     if _unit(slot, chosen) == "s" and value.value > DURATION_MAX_s:
@@ -106,9 +110,7 @@ def _spread(slot: Slot, operands: tuple[Operand, ...], names: Names, chosen: Cho
 
 
 def _named(sort: str) -> Callable[[Slot, tuple[Operand, ...], Names, Chosen], object]:
-    def settler(
-        slot: Slot, operands: tuple[Operand, ...], names: Names, chosen: Chosen
-    ) -> object:
+    def settler(slot: Slot, operands: tuple[Operand, ...], names: Names, chosen: Chosen) -> object:
         found = names.thing(operands[0], sort)
         return found if isinstance(found, Unknown) else found.name
 
@@ -148,7 +150,7 @@ def _level(slot: Slot, operands: tuple[Operand, ...], names: Names, chosen: Chos
     if isinstance(value, Unknown):
         return UNKNOWN
     if isinstance(value, Spread):
-        return names.report("unit-mismatch", operand.place, f"{_said(slot)} takes a value without ±")
+        return _no_spread(slot, operand, names)
     sound = needs(value, kind_of("V"), "any", operand.place, _said(slot), names)
     return Level(float(value.value)) if sound else UNKNOWN
 

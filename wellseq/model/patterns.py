@@ -23,9 +23,7 @@ def read_pattern(operand: Operand, names: Names) -> PatternVolts | Unknown:
 def settled(pattern: Defined) -> PatternVolts | Unknown:
     """A named pattern, settled once among the names of its own file."""
     if pattern.settled is None:
-        pattern.settled = (
-            settle(pattern.block, Names(pattern.scope)) if pattern.block else UNKNOWN
-        )
+        pattern.settled = settle(pattern.block, Names(pattern.scope)) if pattern.block else UNKNOWN
     return pattern.settled
 
 
@@ -83,7 +81,7 @@ def _assign(
     return sound
 
 
-def _value(item: Assignment, names: Names) -> float | None | Unknown:
+def _value(item: Assignment, names: Names) -> float | Unknown | None:
     if item.value is None:
         return None
     value = evaluate(item.value, names)

@@ -123,8 +123,8 @@ class _Reading:
         if self.statement.value is not None:
             self.wrong("syntax", self.statement.value.place, f"`{self._said}` takes no `=`")
         values = self._settle()
-        self._ask_for_missing(values)
-        return self._made(values) if self.sound else None
+        self._ask_for_missing()
+        return self._made(values) if self._complete(values) else None
 
     @property
     def _said(self) -> str:
@@ -245,7 +245,14 @@ class _Reading:
             self.wrong("unknown-name", operand.place, self.kind.REFUSED[word])
         return word in self.kind.REFUSED
 
-    def _ask_for_missing(self, values: dict[str, object]) -> None:
+    def _complete(self, values: dict[str, object]) -> bool:
+        """Whether a step can be made, if only to see what else is wrong with it."""
+        slots = (*self.signature.subjects, *self.signature.clauses.values())
+        return all(slot.field in values for slot in slots if slot.required) and all(
+            field in values for field in self.given
+        )
+
+    def _ask_for_missing(self) -> None:
         for slot in self.signature.subjects:
             if slot.required and slot.field not in self.places:
                 self.wrong("syntax", self.place, f"`{self._said}` needs {slot.spoken}")

@@ -12,10 +12,10 @@ from wellseq.base.finding import Mistake, Origin
 from wellseq.base.names import RESERVED, printable
 from wellseq.base.place import Place
 from wellseq.base.quantity import Quantity, QuantityError, Spread, unit_of
+from wellseq.model.reporter import Reporter
 from wellseq.model.sequence import CloudDeclared
 from wellseq.model.step import PatternVolts
 from wellseq.model.trap import Trap
-from wellseq.model.reporter import Reporter
 from wellseq.model.values import UNKNOWN, Unknown, Value
 from wellseq.text.tree import Block, Name, Operand
 
@@ -41,8 +41,9 @@ OTHERS = "others"
 class Defined:
     """What one name stands for.
 
-    `place` is None for names of the trap.  `value` is a let's value, None until it is its turn; `settled` is a pattern once it
-    is settled, `declared` a cloud; `block` and `parameters` belong to patterns and procedures.
+    `place` is None for names of the trap.  `value` is a let's value, None until it is its turn;
+    `settled` is a pattern once it is settled, `declared` a cloud; `block` and `parameters` belong
+    to patterns and procedures.
     """
 
     name: str
@@ -237,7 +238,7 @@ class Names:
         return self.report(
             "unknown-name",
             name.place,
-            f"'{printable(name.text)}' is a cloud of {cloud.scope.file}, and `use` brings no clouds",
+            f"'{printable(name.text)}' is a cloud of {cloud.scope.file}; `use` brings no clouds",
             "hand the cloud to the procedure as an argument",
         )
 

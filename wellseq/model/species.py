@@ -63,7 +63,7 @@ def ion(mass_u: float, charge_e: int) -> Species:
     """
     if not (math.isfinite(mass_u) and 0 < mass_u <= ION_MASS_U_MAX):
         raise ValueError(f"an ion's mass is above 0 u and at most {ION_MASS_U_MAX:g} u")
-    if charge_e != int(charge_e) or not 0 < abs(charge_e) <= ION_CHARGE_E_MAX:
+    if not 0 < abs(charge_e) <= ION_CHARGE_E_MAX or charge_e != int(charge_e):
         raise ValueError(f"an ion's charge is whole, not 0 e, at most {ION_CHARGE_E_MAX} e")
     name = f"ion of {mass_u:g} u and {int(charge_e):+d} e"
     return Species(name, mass_u * ATOMIC_MASS_KG, mass_u, charge_e * ELEMENTARY_CHARGE_C)

@@ -1,9 +1,9 @@
 """What a step kind is: fields that say which words it takes, and what it draws.
 
 One file per verb in `model/steps/`, named by the verb, holding one subclass of `Step`.  Each field
-is annotated with a `Takes` that says what it must be; the reader of statements works from that alone.
-A field marked `Subject` stands after the verb; a `Word` is a bare word; any other field stands after
-the clause word that is its name (with `_` appended where Python needs it, as in `for_`).
+is annotated with a `Takes` that says what it must be; the reader of statements works from that
+alone.  A field marked `Subject` stands after the verb; a `Word` is a bare word; any other field
+stands after the clause word that is its name (with `_` appended where Python needs it: `for_`).
 """
 
 from __future__ import annotations
@@ -25,7 +25,7 @@ class Takes:
     """What a field accepts.
 
     `what`: quantity, spread, electrode, electrodes, cloud, pattern, line, state, trigger, level,
-    text, label (of a step before this one), choice (one of the words of the field's `Literal`), word.
+    text, label (of a step before this one), choice (a word of the field's `Literal`), word.
     `unit` gives the kind of a quantity; `sign` restricts its value.  Where the kind depends on a
     word chosen before, `by` is the field of that choice and `units` pairs its words with units.
     """
@@ -62,7 +62,7 @@ class Level:
 
 @dataclass(frozen=True, slots=True)
 class Objection:
-    """What this trap cannot do for a step: the field it is about, the bad thing's name, a sentence."""
+    """What this trap cannot do for a step: the field, the bad thing's name, a sentence, a hint."""
 
     field: str
     name: str
@@ -93,7 +93,8 @@ Measured = Annotated[Spread, Takes("spread")]
 class Step(BaseModel):
     """A statement with every name and unit settled; immutable.
 
-    Subclasses add fields and `draw`.  A validator may raise ValueError with a sentence for the author.
+    Subclasses add fields and `draw`.  A validator may raise ValueError with a sentence for the
+    author.
     """
 
     model_config = ConfigDict(frozen=True, extra="forbid", arbitrary_types_allowed=True)
@@ -110,6 +111,10 @@ class Step(BaseModel):
     def objections(self, trap: Trap) -> Iterator[Objection]:
         """What this trap cannot do for this step, as far as its file alone can tell."""
         yield from ()
+
+    def clash(self, first: Step) -> str:
+        """Why this cannot stand after the first FIRST step; empty when it can."""
+        return ""
 
     def draw(self, pen: Pen) -> None:
         """Say on the pen what this step does."""

@@ -9,11 +9,11 @@ from bisect import bisect_right
 from itertools import pairwise
 from typing import Annotated, Literal
 
-from pydantic import Field
+from pydantic import Field, model_validator
 
 from wellseq.model.bounds import bounds
 from wellseq.model.hardware import Flag, Metres, Part
-from wellseq.model.written import choice, listing, real, sound, text
+from wellseq.model.written import choice, fault, listing, real, sound, text
 
 Tesla = Annotated[float, real("T", bounds("T", least="-100", most="100", nonzero=True))]
 Point = Annotated[tuple[Metres, Tesla], listing(2, 2, '["0 mm", "1.6 T"]')]
@@ -41,6 +41,14 @@ class MagneticField(Part):
         sound(_in_order, "the points are not in order along the axis"),
         sound(_one_sign, "the field changes its direction along the axis"),
     ] = Field((), alias="along")
+
+    @model_validator(mode="after")
+    def _says_one_thing(self) -> MagneticField:
+        if (self.uniform_T is None) == (not self.points):
+            hint = 'write uniform = "1.6 T", or points in along = [...]; one of the two'
+            said = "it says both" if self.points else "it says nothing"
+            raise fault("syntax", said, hint)
+        return self
 
     @property
     def along(self) -> tuple[tuple[float, float], ...]:

@@ -20,7 +20,7 @@ from wellseq.base.place import Place
 Path = tuple[str | int, ...]
 ELEMENTS_MAX = 1000
 """Elements of one array that get a place of their own."""
-TOKENS_MAX = 250_000
+TOKENS_MAX = 150_000
 NESTING_MAX = 64
 DOTS_MAX = 8
 WORD_MAX = 100

@@ -96,7 +96,7 @@ class _Draft:
         pairs, margins = self.margins(raw)
         rest = tuple(self.rest(raw))
         for fault in faults_of(entries, pairs, rest):
-            if fault.path[0] not in self.meant:
+            if not self.explained(fault):
                 self.faults.append(fault)
         parts = [entry.part for entry in entries]
         return {
@@ -111,6 +111,13 @@ class _Draft:
             "margins": margins,
             "rests": rest,
         }
+
+    def explained(self, fault: Fault) -> bool:
+        """Whether a fault of the trap as a whole comes from a list whose key is misspelt."""
+        if len(fault.path) == 1:
+            return fault.path[0] in self.meant
+        about_names = fault.name in ("unknown-name", "name-unused") and fault.path[0] != "line"
+        return about_names and not self.meant.isdisjoint(("electrode", "output"))
 
     def part(self, path: Path, model: type[P], table: Table, more: Sequence[str] = ()) -> P | None:
         """Read one table as a model; None when a value of it cannot be read."""
@@ -224,7 +231,11 @@ class _Draft:
 
     def rest(self, raw: Table) -> Iterator[Rest]:
         """Where outputs stand at first, by electrode or output."""
-        for key, value in (self.table(("rest",), raw.get("rest", {})) or {}).items():
+        table = self.table(("rest",), raw.get("rest", {})) or {}
+        if len(table) > TABLES_MAX:
+            message = f"[rest] has {len(table)} keys"
+            self.add(("rest",), "too-large", message, f"at most {TABLES_MAX}")
+        for key, value in islice(table.items(), TABLES_MAX):
             try:
                 yield Rest.model_validate({"name": key, "level": value}, context=WRITTEN)
             except ValidationError as error:

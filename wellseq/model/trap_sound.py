@@ -27,6 +27,8 @@ STRAYS_MAX = 20
 """Words that name nothing for which a meaning is looked for before other faults are held back."""
 GAP_RADII_MAX = 2
 """A gap as wide as the bore is no gap but a forgotten electrode."""
+DUST = 1e-9
+"""Relative rounding of a difference of two lengths; a limit met exactly is met."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -173,7 +175,7 @@ def _neighbours(left: Entry, right: Entry, radius_m: float) -> Iterator[Fault]:
         message = f"electrode '{right.name}' begins {_mm(-gap_m)} before '{left.name}' ends"
         hint = f"'{left.name}' ends at {_mm(left_to_m)}; electrodes do not overlap"
         yield Fault(path, "trap-not-sound", message, hint)
-    elif right.number == left.number + 1 and gap_m > GAP_RADII_MAX * radius_m:
+    elif right.number == left.number + 1 and gap_m > GAP_RADII_MAX * radius_m * (1 + DUST):
         message = f"the gap between '{left.name}' and '{right.name}' is {_mm(gap_m)} wide"
         hint = f"at most two radii, {_mm(GAP_RADII_MAX * radius_m)}; is an electrode missing?"
         yield Fault(path, "trap-not-sound", message, hint)
@@ -247,7 +249,7 @@ def _initials(entries: Sequence[Entry]) -> Iterator[Fault]:
 
 
 def _pairs(stack: Sequence[Entry], pairs: Numbered) -> Iterator[Fault]:
-    numbers = {entry.name: entry.number for entry in stack}
+    numbers = {entry.name: entry.number for entry in reversed(stack)}
     seen: dict[frozenset[str], int] = {}
     for number, pair in pairs:
         path: Path = ("margins", "pair", number, "between")
@@ -279,7 +281,7 @@ def _rests(
     by_name = {entry.name: entry for entry in outputs}
     drives = {
         item.part.name: by_name.get(item.part.output)
-        for item in stack
+        for item in reversed(stack)
         if isinstance(item.part, Electrode)
     }
     known = (*_names(stack), *_names(outputs))

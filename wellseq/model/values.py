@@ -158,13 +158,17 @@ def _combine(
     elif step.op == "*":
         kind = tuple(a + b for a, b in zip(left.kind, right.kind, strict=True))
         share = kind == PLAIN and (isinstance(left, Share) or isinstance(right, Share))
-        made = Share(left.value * right.value) if share else Quantity(left.value * right.value, kind)
+        made = (
+            Share(left.value * right.value) if share else Quantity(left.value * right.value, kind)
+        )
     elif not right.value:
-        return names.report("unit-mismatch", step.right.place, "this is zero, and divides")
+        return names.report("unit-mismatch", step.right.place, "this is zero, and nothing can be divided by it")
     else:
         kind = tuple(a - b for a, b in zip(left.kind, right.kind, strict=True))
         share = kind == PLAIN and isinstance(left, Share) and not isinstance(right, Share)
-        made = Share(left.value / right.value) if share else Quantity(left.value / right.value, kind)
+        made = (
+            Share(left.value / right.value) if share else Quantity(left.value / right.value, kind)
+        )
     return _bounded(made, left_place.to(step.right.place), names)
 
 
@@ -233,7 +237,13 @@ KINDS: Mapping[str, str] = {
 }
 """How a kind is spoken of, by its name in base units."""
 
-_SAMPLES = {"V": "'12 V'", "s": "'20 ms'", "Hz": "'0.4 MHz'", "plain number": "'12'", "/m3": "'1e8 /cm3'"}
+_SAMPLES = {
+    "V": "'12 V'",
+    "s": "'20 ms'",
+    "Hz": "'0.4 MHz'",
+    "plain number": "'12'",
+    "/m3": "'1e8 /cm3'",
+}
 
 
 def sample(kind: Kind) -> str:

@@ -1,4 +1,4 @@
-"""`claims.json`: every proved depth is what was demanded, and says so about this folder's blocks."""
+"""`claims.json`: every proved depth is what was demanded, and within the folder's blocks."""
 
 from __future__ import annotations
 

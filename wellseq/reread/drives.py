@@ -17,9 +17,7 @@ FLOAT = re.compile(r"[0-9]{1,24}(?:\.[0-9]{1,24})?(?:e[+-][0-9]{1,3})?")
 ATTO = Fraction(1, 10**18)
 
 
-def read_drives(
-    content: bytes, block: BlockPlan, rings: Mapping[str, int]
-) -> list[list[str]]:
+def read_drives(content: bytes, block: BlockPlan, rings: Mapping[str, int]) -> list[list[str]]:
     """The drives of a block as text cells, empty phases left out; raises Unsound."""
     file = str(block.drives)
     try:
@@ -42,9 +40,7 @@ def read_drives(
     return found
 
 
-def _drive(
-    cells: list[str], block: BlockPlan, rings: Mapping[str, int], line: int
-) -> list[str]:
+def _drive(cells: list[str], block: BlockPlan, rings: Mapping[str, int], line: int) -> list[str]:
     def wrong(message: str) -> Unsound:
         return Unsound(UNSOUND, str(block.drives), message, line)
 

@@ -1,8 +1,8 @@
 """A published folder → findings, from its bytes alone.
 
 Nothing of the code that wrote the folder is used here, only the words of `base/`: a fault in the
-writer and the same fault in its reader would agree with each other.  Whatever is malformed becomes a
-finding; every file is opened once, links are not followed.
+writer and the same fault in its reader would agree with each other.  Whatever is malformed becomes
+a finding; every file is opened once, links are not followed.
 """
 
 from __future__ import annotations
@@ -177,12 +177,12 @@ class _Reader:
         if content_id(made, tables, drives) != made.content_id:
             raise Unsound("content-differs", MANIFEST, "the tables are not those of its content id")
         self._say_all(wrongs(made, tables))
-        self._say_all(too_far_apart(made, tables))
+        self._say_all(too_far_apart(made, tables, drives))
         claims = parse(self._of(CLAIMS, CLAIMS_UNSOUND), CLAIMS, CLAIMS_UNSOUND)
         self._say_all(judge_claims(claims, made))
 
     def _listed(self, manifest: Part, made: Plan) -> None:
-        """The copies of the sources are the ones named, and nothing is named that serves nothing."""
+        """The copies of the sources are the ones named, and no file is there for nothing."""
         expected = {CLAIMS, CAUTIONS}
         expected |= {block.table for block in made.blocks}
         expected |= {block.drives for block in made.blocks if block.drives is not None}

@@ -130,7 +130,9 @@ def plan(manifest: Part) -> Plan:
         converters=converters,
         switches=switches,
         lines=lines,
-        rings={part.text("name"): part.whole("sectors", 1, 64) for part in trap.parts("electrodes")},
+        rings={
+            part.text("name"): part.whole("sectors", 1, 64) for part in trap.parts("electrodes")
+        },
         neighbours=tuple(_neighbours(trap, names)),
         rows_max=limits.whole("table_rows", 1),
         blocks=blocks,
@@ -192,9 +194,7 @@ def _neighbours(trap: Part, names: list[str]) -> list[Neighbours]:
             raise limit.wrong("electrodes", "the next two electrodes along the axis")
         if one[1] not in names or other[1] not in names:
             raise trap.wrong("electrodes", "on outputs that the manifest lists")
-        found.append(
-            Neighbours((one[0], other[0]), (one[1], other[1]), limit.number("limit_V"))
-        )
+        found.append(Neighbours((one[0], other[0]), (one[1], other[1]), limit.number("limit_V")))
     return found
 
 

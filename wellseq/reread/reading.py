@@ -47,11 +47,9 @@ def parse(content: bytes, file: str, name: str) -> Part:
 
 
 def canonical(document: object) -> bytes:
-    """The bytes of a JSON document as wellseq writes it: sorted keys, one blank, a last new line."""
+    """The bytes of a JSON document as wellseq writes it: sorted keys, indent 1, a new line."""
     try:
-        text = json.dumps(
-            document, indent=1, sort_keys=True, ensure_ascii=False, allow_nan=False
-        )
+        text = json.dumps(document, indent=1, sort_keys=True, ensure_ascii=False, allow_nan=False)
         return f"{text}\n".encode()
     except ValueError:
         # An infinite number or half a character: never written, so never equal to what was read.

@@ -1,7 +1,6 @@
 """What a table may not do, judged row by row on exact rationals: clocks, slew, neighbours, end.
 
-Rounding to codes may add one code to a change of voltage and half a code to a level; a staircase may
-stray from its ramp by what the manifest declares.  Nothing else is forgiven.
+Rounding to codes may add one code to a change of voltage.  Nothing else is forgiven.
 """
 
 from __future__ import annotations
@@ -9,6 +8,7 @@ from __future__ import annotations
 from array import array
 from collections.abc import Iterator
 from fractions import Fraction
+from itertools import pairwise
 
 from wellseq.reread.plan import Converter, Plan
 from wellseq.reread.reading import Unsound
@@ -37,11 +37,7 @@ def wrongs(plan: Plan, tables: list[Table]) -> Iterator[Unsound]:
 
 def changes(column: array[int]) -> list[int]:
     """The rows at which a column differs from the row before."""
-    return [
-        row
-        for row, (before, after) in enumerate(zip(column, column[1:], strict=False), 1)
-        if before != after
-    ]
+    return [row for row, (before, after) in enumerate(pairwise(column), 1) if before != after]
 
 
 def _at(table: Table, row: int, message: str) -> Unsound:

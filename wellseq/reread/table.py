@@ -1,7 +1,7 @@
 """The bytes of a block's CSV → whole numbers per column, each cell asked for as it must be.
 
-A table needs no quotes, no blanks and no comments, so none are taken.  The volts beside a code must
-be the shortest decimal of the float nearest to the exact rational gain * (low + code * lsb) + offset.
+A table needs no quotes, no blanks and no comments, so none are taken.  The volts beside a code
+must be the shortest decimal of the float nearest to the exact gain * (low + code * lsb) + offset.
 """
 
 from __future__ import annotations
@@ -105,9 +105,7 @@ def _whole(texts: tuple[str, ...], file: str, name: str, most: int) -> list[int]
     return [known[text] for text in texts]
 
 
-def _states(
-    texts: tuple[str, ...], states: tuple[str, ...], file: str, name: str
-) -> list[int]:
+def _states(texts: tuple[str, ...], states: tuple[str, ...], file: str, name: str) -> list[int]:
     known = {state: index for index, state in enumerate(states)}
     strange = set(texts) - set(known)
     if strange:

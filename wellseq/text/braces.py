@@ -33,17 +33,14 @@ class Repairs:
 
 
 @dataclass(frozen=True, slots=True)
-class _Brace:
-    """A brace, where its line's first word stands and how far in; `leads`: it is that word."""
+class _Mark:
+    """A brace, or with `kind` empty the beginning of a line; `indent` is that of its line."""
 
-    opens: bool
+    kind: str
     spot: Spot
-    line_begins: Spot
     indent: int
-
-    @property
-    def leads(self) -> bool:
-        return self.spot == self.line_begins
+    leads: bool
+    line_has_brace: bool
 
 
 def repairs_by_layout(source: str) -> Repairs:
@@ -51,62 +48,66 @@ def repairs_by_layout(source: str) -> Repairs:
 
     Empty when the layout tells nothing, or less than counting does.
     """
-    braces = list(_braces(source))
-    surplus = sum(1 if brace.opens else -1 for brace in braces)
-    repairs = Repairs()
+    marks = list(_marks(source))
+    surplus = sum({"{": 1, "}": -1}.get(mark.kind, 0) for mark in marks)
+    guesses: list[Repairs] = []
     if surplus > 0:
-        repairs = _unclosed(braces)
+        with_braces = [mark for mark in marks if mark.line_has_brace]
+        guesses = [_unclosed(marks), _unclosed(with_braces)]
     elif surplus < 0:
-        repairs = _needless(braces)
-    return repairs if repairs.count == abs(surplus) else Repairs()
+        guesses = [_needless(marks)]
+    return next((guess for guess in guesses if guess.count == abs(surplus)), Repairs())
 
 
-def _braces(source: str) -> Iterator[_Brace]:
+def _marks(source: str) -> Iterator[_Mark]:
     for number, line in enumerate(_LINE_END.split(source), start=1):
-        if "{" not in line and "}" not in line:
-            continue
         match = _INDENT.match(line)
         begins = match.end() if match else 0
+        if line[begins : begins + 1] in ("", "#"):
+            continue
         indent = len(line[:begins].expandtabs())
-        for match in _BRACE.finditer(line):
-            if match[0] in ("{", "}"):
-                spot = (number, match.start() + 1)
-                yield _Brace(match[0] == "{", spot, (number, begins + 1), indent)
+        braces = [match for match in _BRACE.finditer(line) if match[0] in ("{", "}")]
+        if line[begins] != "}":
+            yield _Mark("", (number, begins + 1), indent, True, bool(braces))
+        for match in braces:
+            column = match.start() + 1
+            yield _Mark(match[0], (number, column), indent, column == begins + 1, True)
 
 
-def _unclosed(braces: list[_Brace]) -> Repairs:
-    """Blocks that lack their `}`: a later brace stands too far out for them to be open still."""
-    repairs, open_ones = Repairs(), []
-    for brace in braces:
-        first_of_line = brace.leads or brace.opens
-        while first_of_line and len(open_ones) > (0 if brace.opens else 1):
-            inner = open_ones[-1]
-            same_line = inner.spot[0] == brace.spot[0]
-            outside = inner.indent >= brace.indent if brace.opens else inner.indent > brace.indent
-            if same_line or not outside:
-                break
-            open_ones.pop()
-            repairs.close_before(brace.line_begins)
-        if brace.opens:
-            open_ones.append(brace)
-        elif open_ones:
-            open_ones.pop()
+def _unclosed(marks: list[_Mark]) -> Repairs:
+    """Blocks that lack their `}`: a later line stands too far out for them to be open still."""
+    repairs = Repairs()
+    open_ones: list[_Mark] = []
+    for mark in marks:
+        if mark.kind == "":
+            while open_ones and open_ones[-1].indent >= mark.indent:
+                open_ones.pop()
+                repairs.close_before(mark.spot)
+        elif mark.kind == "{":
+            open_ones.append(mark)
+        else:
+            while mark.leads and len(open_ones) > 1 and open_ones[-1].indent > mark.indent:
+                open_ones.pop()
+                repairs.close_before(mark.spot)
+            del open_ones[-1:]
     repairs.count += len(open_ones)
     return repairs
 
 
-def _needless(braces: list[_Brace]) -> Repairs:
+def _needless(marks: list[_Mark]) -> Repairs:
     """Closing braces that fit no open block: too far in, or at the end of another block's line."""
-    repairs, open_ones = Repairs(), []
-    for brace in braces:
-        if brace.opens:
-            open_ones.append(brace)
+    repairs = Repairs()
+    open_ones: list[_Mark] = []
+    for mark in marks:
+        if mark.kind == "{":
+            open_ones.append(mark)
+        if mark.kind != "}":
             continue
         inner = open_ones[-1] if open_ones else None
         if inner is None or (
-            brace.indent > inner.indent if brace.leads else brace.spot[0] != inner.spot[0]
+            mark.indent > inner.indent if mark.leads else mark.spot[0] != inner.spot[0]
         ):
-            repairs.extra.add(brace.spot)
+            repairs.extra.add(mark.spot)
             repairs.count += 1
         else:
             open_ones.pop()

@@ -11,7 +11,7 @@ from dataclasses import replace
 from typing import Any
 
 from wellseq.base.names import normal
-from wellseq.text.token import Token
+from wellseq.text.tokens import Token
 from wellseq.text.tree import (
     Allowance,
     Assignment,

@@ -8,7 +8,7 @@ from typing import Any
 
 from wellseq.base.data import data_folder
 from wellseq.text.build import Builder
-from wellseq.text.token import Token
+from wellseq.text.tokens import Token
 from wellseq.text.tree import Assignment, Statement
 
 
@@ -48,7 +48,7 @@ class StatementParser:
             text,
             parser="lalr",
             lexer=AsScanned,
-            transformer=Builder(),  # type: ignore[arg-type]
+            transformer=Builder(),
             strict=True,
             propagate_positions=False,
             cache=False,
@@ -58,7 +58,7 @@ class StatementParser:
     def parse(self, tokens: list[Token]) -> Statement | Assignment:
         """Build the one statement that the tokens are.  Raises Unexpected."""
         try:
-            return self._lark.parse(tokens)  # type: ignore[arg-type, return-value]
+            return self._lark.parse(tokens)  # type: ignore[return-value]
         except self._unexpected as error:
             token: Any = error.token
             found = None if token.type == "$END" else token

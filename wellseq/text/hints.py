@@ -7,7 +7,7 @@ from wellseq.base.quantity import RESERVED_UNIT_WORDS
 from wellseq.text import odd
 from wellseq.text.grammar import Unexpected
 from wellseq.text.mistakes import quoted
-from wellseq.text.token import OPERATORS, Token
+from wellseq.text.tokens import OPERATORS, Token
 
 _WRITTEN = {
     "_COMMA": "','",

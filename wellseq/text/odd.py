@@ -49,7 +49,7 @@ _INSTEAD = {
 
 
 def begins_a_name(char: str) -> bool:
-    """Whether a name may begin with the character: a letter of any script or `_`; not at the end of a text."""
+    """Whether a name may begin with the character: a letter of any script or `_`; `""` is none."""
     return char == "_" or char.isalpha()
 
 

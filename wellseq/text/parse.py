@@ -13,8 +13,8 @@ from wellseq.text.hints import explain
 from wellseq.text.mistakes import Mistakes, ReadingStops
 from wellseq.text.scan import scan
 from wellseq.text.split import Item, Splitter
-from wellseq.text.token import Token
-from wellseq.text.tree import Statement, Tree
+from wellseq.text.tokens import Token
+from wellseq.text.tree import Block, Statement, Tree
 
 SIZE_MAX = 10_000_000
 """Most bytes, and most characters, of one source."""
@@ -83,6 +83,7 @@ def _lacks_its_sign(item: Statement) -> bool:
         and item.verb.text == "let"
         and item.value is None
         and len(item.operands) == 2
+        and not isinstance(item.operands[1], Block)
     )
 
 

@@ -1,4 +1,4 @@
-"""A file → its bytes, their text, its tree; what cannot be read is a mistake, never an exception."""
+"""A file → its bytes, their text, its tree; what cannot be read is a mistake, not an exception."""
 
 from __future__ import annotations
 
@@ -7,6 +7,7 @@ import stat
 from pathlib import Path
 
 from wellseq.base.finding import Mistake
+from wellseq.base.names import printable
 from wellseq.base.place import Place
 from wellseq.text.parse import SIZE_MAX, parse
 from wellseq.text.tree import Tree
@@ -29,24 +30,25 @@ def read_bytes(path: Path, shown: str) -> bytes | Mistake:
     The kind is asked before and after opening: opening a device may move something, and a pipe
     that nobody writes to would wait for ever.
     """
+    name = printable(shown)
     try:
         kind = _kind(os.stat(path).st_mode)
         if kind:
-            return _unreadable(shown, f"'{shown}' is {kind}, not a file", "name a text file")
+            return _unreadable(shown, f"'{name}' is {kind}, not a file", "name a text file")
         flags = os.O_RDONLY | getattr(os, "O_NONBLOCK", 0) | getattr(os, "O_BINARY", 0)
         with os.fdopen(os.open(path, flags), "rb") as file:
             kind = _kind(os.fstat(file.fileno()).st_mode)
             if kind:
-                return _unreadable(shown, f"'{shown}' is {kind}, not a file", "name a text file")
+                return _unreadable(shown, f"'{name}' is {kind}, not a file", "name a text file")
             data = file.read(SIZE_MAX + 1)
     except FileNotFoundError:
-        return _unreadable(shown, f"there is no file '{shown}'", "look at the spelling of the path")
+        return _unreadable(shown, f"there is no file '{name}'", "look at the spelling of the path")
     except PermissionError:
-        return _unreadable(shown, f"'{shown}' may not be read", "ask for the right to read it")
+        return _unreadable(shown, f"'{name}' may not be read", "ask for the right to read it")
     except (OSError, ValueError):
-        return _unreadable(shown, f"'{shown}' cannot be read", "look at the path and the disk")
+        return _unreadable(shown, f"'{name}' cannot be read", "look at the path and the disk")
     if len(data) > SIZE_MAX:
-        message = f"'{shown}' has more than {SIZE_MAX // 1_000_000} MB"
+        message = f"'{name}' has more than {SIZE_MAX // 1_000_000} MB"
         return Mistake("too-large", Place(shown), message, "a sequence is a text of statements")
     return data
 
@@ -54,7 +56,7 @@ def read_bytes(path: Path, shown: str) -> bytes | Mistake:
 def decode(data: bytes, shown: str) -> str | Mistake:
     """The text of strict UTF-8, without its byte order mark."""
     if data.startswith(_UTF16) or b"\0" in data[:4]:
-        message = f"'{shown}' is not UTF-8; it looks like UTF-16"
+        message = f"'{printable(shown)}' is not UTF-8; it looks like UTF-16"
         return _unreadable(shown, message, "save the file as UTF-8")
     try:
         return data.decode("utf-8").removeprefix("\ufeff")

@@ -16,7 +16,7 @@ from wellseq.base.quantity import RESERVED_UNIT_WORDS, QuantityError, read_numbe
 from wellseq.text import odd
 from wellseq.text.mistakes import Mistakes, quoted
 from wellseq.text.near_units import near_unit
-from wellseq.text.token import MARKS, Token
+from wellseq.text.tokens import MARKS, Token
 from wellseq.text.tree import Number
 
 NAME_LENGTH_MAX = 200
@@ -100,7 +100,9 @@ class _Scanner:
         self.offset = end
         return Token(type, value, self.file, self.line, start - self.line_start + 1, start, end)
 
-    def _bad(self, start: int, end: int, message: str, hint: str = "", name: str = "syntax") -> Token:
+    def _bad(
+        self, start: int, end: int, message: str, hint: str = "", name: str = "syntax"
+    ) -> Token:
         token = self._token("BAD", self.source[start:end], start, end)
         self.mistakes.add(name, token.place, message, hint)
         return token
@@ -142,7 +144,7 @@ class _Scanner:
         return self._token("NUMBER", Number(value, unit, self._place(start, end)), start, end)
 
     def _unit_meant(self, number: str, unit: str, end: int) -> tuple[str, int]:
-        """The unit to go on with, and where it ends, when `unit` is none or not all that stands there.
+        """The unit to go on with, and where it ends, when `unit` is none or not all that is there.
 
         A word that looks like a unit is a mistake and is read as the unit that it looks like, so
         that a definition does not drag all its uses along.
@@ -195,7 +197,9 @@ class _Scanner:
 
     def _hyphen(self, last: Token, start: int) -> Token:
         first, end = last.start, start
-        while self.source.startswith("-", end) and odd.begins_a_name(self.source[end + 1 : end + 2]):
+        while self.source.startswith("-", end) and odd.begins_a_name(
+            self.source[end + 1 : end + 2]
+        ):
             end = odd.word_end(self.source, end + 1)
         written = self.source[first:end]
         message = f"{quoted(written)} has a hyphen and no blanks; no name has a hyphen in it"

@@ -9,7 +9,7 @@ from collections.abc import Callable, Iterable
 
 from wellseq.text.braces import Repairs
 from wellseq.text.mistakes import Mistakes, ReadingStops
-from wellseq.text.token import OPERATORS, Token
+from wellseq.text.tokens import OPERATORS, Token
 from wellseq.text.tree import Assignment, Block, Statement
 
 NESTING_MAX = 64
@@ -77,10 +77,11 @@ class Splitter:
             frame = frames[-1]
             if after_newline:
                 after_newline = False
-                if kind == "LBRACE" and frame.tokens:
-                    self._brace_on_next_line(token)
-                elif frame.tokens and not _goes_on(frame.tokens, kind):
-                    self._end_statement()
+                if frame.tokens and not _goes_on(frame.tokens, kind):
+                    if kind == "LBRACE":
+                        self._brace_on_next_line(token)
+                    else:
+                        self._end_statement()
             elif frame.tokens and kind == "LBRACE" and _is_next_lane(frame.tokens):
                 self._end_before_last()
             if kind in handlers:
@@ -114,7 +115,7 @@ class Splitter:
             self._depth -= 1
             frame.tokens.append(token)
         else:
-            self._stray(token, "'('")
+            self._stray(token, "no '(' is open here")
             token.type = "BAD"
             self._bad(token)
 
@@ -132,7 +133,7 @@ class Splitter:
         self._end_statement()
         if len(self._frames) == 1 or (token.line, token.column) in self._repairs.extra:
             self.unbalanced = True
-            self._stray(token, "'{'")
+            self._stray(token, "no block is open here")
         else:
             self._close_block(token)
 
@@ -184,15 +185,14 @@ class Splitter:
                 "name a part of it: a procedure, a pattern or a let",
             )
 
-    def _stray(self, token: Token, partner: str) -> None:
+    def _stray(self, token: Token, why: str) -> None:
         """Report a closing mark that closes nothing; a row of them is one mistake."""
-        frame = self._frames[-1]
-        previous = frame.tokens[-1] if frame.tokens else None
-        in_row = self._strays and (partner == "'{'" or (previous and previous.type == "BAD"))
+        tokens = self._frames[-1].tokens
+        in_row = self._strays and (not tokens or tokens[-1].type == "BAD")
         self._strays = self._strays + 1 if in_row else 1
         if self._strays == 1 or (token.line, token.column) in self._repairs.extra:
-            message = f"this '{token.value}' closes nothing: there is no {partner} before it"
-            self._mistakes.add("syntax", token.place, message, f"delete it, or write {partner}")
+            message = f"this '{token.value}' closes nothing: {why}"
+            self._mistakes.add("syntax", token.place, message, "delete it or open what it closes")
         elif self._strays > STRAYS_MAX:
             raise ReadingStops
 

@@ -16,7 +16,7 @@ from wellseq.base.place import Place
 
 @dataclass(frozen=True, slots=True)
 class Number:
-    """A literal: the exact number as written and its unit word ('' for a plain number)."""
+    """A literal: the exact number as written and its unit word ('' for a plain number, u for µ)."""
 
     value: Fraction
     unit: str
@@ -25,7 +25,7 @@ class Number:
 
 @dataclass(frozen=True, slots=True)
 class Name:
-    """A name, NFC-normalised; `written` quotes nothing away (places point at the source)."""
+    """A name, NFC-normalised; its place points at the source as it was written."""
 
     text: str
     place: Place
@@ -127,9 +127,10 @@ class Statement:
     """One statement, in the order it was written.
 
     `verb` is None for a line of clauses inside braces.  `operands` are what follows the verb and
-    what stands after a clause without being a bare word (as in `assume temperature of bunch 140 K`);
-    a block is the operand it stands as.  `value` is what follows `=` in `let wall = 90 V`.
-    `words` are bare words after the first clause (`smoothly`).
+    what stands beside a clause's operands without being a bare word, as the value in `assume
+    temperature of bunch 140 K`; a block is the operand it stands as.  `value` is what follows `=`
+    in `let wall = 90 V`.
+    `words` are bare names beside a complete operand (`smoothly`, the state in `set mcp_bias off`).
     """
 
     verb: Name | None

@@ -1,4 +1,4 @@
-"""The drives of each block that has any → one CSV (RFC 4180): when, how fast, how hard, which phase.
+"""The drives of each block that has any → one CSV (RFC 4180): when, how fast, how hard.
 
 Times are decimal seconds from the block's first row, frequencies Hz, amplitudes V zero to peak;
 phases are degrees at the start, sector 1 first, counted counter-clockwise seen from +z.  Between

@@ -28,7 +28,7 @@ class _Part(BaseModel):
 
 
 class Span(_Part):
-    """Lines and columns count from 1 and columns are characters; `end_column` is one past the last."""
+    """Lines and columns count from 1; columns are characters, `end_column` one past the last."""
 
     file: str
     line: int = Field(ge=1)

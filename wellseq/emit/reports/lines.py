@@ -18,7 +18,7 @@ _SEVERITY = {Verdict.FAIL: "error", Verdict.UNSURE: "error", Verdict.ALLOWED: "n
 
 
 def report(things: Sequence[Examined], options: Options) -> str:
-    """All findings that are not passes, then for each file what was not examined, or that all was."""
+    """All findings but passes, then for each file what was not examined, or that all was."""
     return "".join(f"{line}\n" for thing in things for line in _lines(thing, options))
 
 

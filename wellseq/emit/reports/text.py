@@ -101,7 +101,9 @@ def _when(finding: Finding) -> str:
 def _margins(thing: Examined, options: Options) -> Iterator[str]:
     passing = thing.by_margin()
     if passing:
-        yield _painted(f"margins of {printable(thing.shown)}, the nearest to its limit first", "1", options)
+        yield _painted(
+            f"margins of {printable(thing.shown)}, the nearest to its limit first", "1", options
+        )
     for finding in passing:
         subject = f" of {printable(finding.subject)}" if finding.subject else ""
         yield (

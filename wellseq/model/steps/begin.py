@@ -15,6 +15,12 @@ class Begin(Step):
     in_: Pattern
     at: Electrode
 
+    def clash(self, first: Step) -> str:
+        """All clouds begin in one and the same pattern."""
+        if isinstance(first, Begin) and self.in_ != first.in_:
+            return "all clouds begin in one and the same pattern, and this is another one"
+        return ""
+
     def draw(self, pen: Pen) -> None:
         """Put the outputs at the pattern before time zero and the cloud into its well."""
         pen.begin(self.in_.volts, self.in_.others_V)

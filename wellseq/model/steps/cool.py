@@ -1,6 +1,7 @@
 """cool: a cloud loses its heat, by radiation or to a coolant that shares its well."""
 
-from typing import Annotated
+from collections.abc import Mapping
+from typing import Annotated, ClassVar
 
 from wellseq.model.effects import Acted
 from wellseq.model.pen import Pen
@@ -10,7 +11,7 @@ from wellseq.model.step import Cloud, Duration, Step, Subject
 class Cool(Step):
     """`cool CLOUD [with COOLANT] for T`: nothing moves; both clouds must be in the trap."""
 
-    REFUSED = {
+    REFUSED: ClassVar[Mapping[str, str]] = {
         "until": "`until` needs the forecast of temperature, which this version does not make; "
         "leave it out or state the measured value with `assume`"
     }

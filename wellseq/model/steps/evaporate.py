@@ -10,8 +10,8 @@ from wellseq.model.step import Cloud, Depth, Duration, Electrodes, Step, Subject
 class Evaporate(Step):
     """`evaporate CLOUD through E[, E2] to U over T [exponentially]`.
 
-    `to` is the own vacuum depth on axis over that side, in V; it falls straight in time, or by equal
-    ratios when `exponentially`.
+    `to` is the own vacuum depth on axis over that side, in V; it falls straight in time, or by
+    equal ratios when `exponentially`.
     """
 
     cloud: Annotated[Cloud, Subject()]

@@ -34,9 +34,7 @@ class Nest(Step):
 
     def draw(self, pen: Pen) -> None:
         """Ramp to the pattern while both clouds are watched."""
-        pen.ramp(
-            self.using.volts, self.over, others_V=self.using.others_V, smoothly=self.smoothly
-        )
+        pen.ramp(self.using.volts, self.over, others_V=self.using.others_V, smoothly=self.smoothly)
         pen.note(Acted(self.cloud))
         pen.note(Acted(self.host))
         pen.note(Nested(self.cloud, self.host))

@@ -1,6 +1,7 @@
 """require: the author's own claim about the state at this place."""
 
-from typing import Annotated, Literal, Self
+from collections.abc import Mapping
+from typing import Annotated, ClassVar, Literal, Self
 
 from pydantic import model_validator
 
@@ -9,18 +10,19 @@ from wellseq.model.pen import Pen
 from wellseq.model.step import Cloud, Label, Step, Subject, Takes, Word
 
 _LATER = "only depth, separation and time can be required yet; {} needs the forecast of clouds"
+_FORECAST = ("temperature", "number", "radius", "density")
 _UNITS = (("depth", "V"), ("separation", "m"), ("time", "s"))
 Bound = Annotated[float, Takes("quantity", by="quantity", units=_UNITS, sign="not negative")]
 
 
 class Require(Step):
-    """`require QUANTITY of CLOUD above|below|between …`, `separation of A from B`, `time after "…"`.
+    """`require depth of CLOUD`, `separation of CLOUD from CLOUD`, `time after LABEL`, and a bound.
 
-    Bounds in V (depth), m (separation) and s (time).  `throughout` asks for the worst since the
-    last label instead of the state at this place.
+    The bound is `above X`, `below X` or `between X and Y`; in V (depth), m (separation), s (time).
+    `throughout` asks for the worst since the last label instead of the state at this place.
     """
 
-    REFUSED = {word: _LATER.format(word) for word in ("temperature", "number", "radius", "density")}
+    REFUSED: ClassVar[Mapping[str, str]] = {word: _LATER.format(word) for word in _FORECAST}
 
     quantity: Annotated[Literal["depth", "separation", "time"], Takes("choice"), Subject()]
     of: Cloud | None = None

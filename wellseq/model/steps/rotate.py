@@ -1,8 +1,8 @@
 """rotate: a rotating-wall drive on the sectors of a ring.
 
-A ring of n sectors drives azimuthal order m as a travelling wave when neighbouring sectors differ by
-360 m / n degrees, which turns one way only while n > 2 m.  Source: derived (sampling of a wave of
-order m at n angles).
+A ring of n sectors drives azimuthal order m as a travelling wave when neighbouring sectors differ
+by 360 m / n degrees, which turns one way only while n > 2 m.  Source: derived (sampling of a wave
+of order m at n angles).
 """
 
 from collections.abc import Iterator

@@ -14,7 +14,17 @@ class Token:
     Lark reads `type`, and the other attributes when it makes an end mark that borrows a place.
     """
 
-    __slots__ = ("column", "end", "end_column", "end_line", "file", "line", "start", "type", "value")
+    __slots__ = (
+        "column",
+        "end",
+        "end_column",
+        "end_line",
+        "file",
+        "line",
+        "start",
+        "type",
+        "value",
+    )
     start_pos = end_pos = None
 
     def __init__(

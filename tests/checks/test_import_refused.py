@@ -1,0 +1,5 @@
+"""A file that may not be used: `import-refused` hands on what was met."""
+
+
+def test_mistakes_of_this_name_fail_and_no_others(make):
+    make.only_mistakes("import-refused")

@@ -1,0 +1,5 @@
+"""A trap file with a fault: `trap-not-sound` hands on what was met."""
+
+
+def test_mistakes_of_this_name_fail_and_no_others(make):
+    make.only_mistakes("trap-not-sound")

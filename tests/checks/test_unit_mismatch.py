@@ -1,0 +1,5 @@
+"""A quantity of the wrong kind: `unit-mismatch` hands on what was met."""
+
+
+def test_mistakes_of_this_name_fail_and_no_others(make):
+    make.only_mistakes("unit-mismatch")

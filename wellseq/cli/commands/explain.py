@@ -1,0 +1,99 @@
+"""Explain a word: a step, a clause, a unit, a finding, or what verify can find.
+
+The pages are those of the manual; what is known about a unit or a clause comes from the program.
+"""
+
+from __future__ import annotations
+
+import argparse
+import sys
+from pathlib import Path
+
+from wellseq.cli import status
+from wellseq.cli.common import complain
+
+EXAMPLE = "wellseq explain evaporate well-too-shallow V/us"
+
+
+def add_arguments(parser: argparse.ArgumentParser) -> None:
+    """NAME…"""
+    parser.add_argument("name", nargs="+", metavar="NAME", help="a step, clause, unit or finding")
+
+
+def run(arguments: argparse.Namespace) -> int:
+    """Print what is known about every name; returns the exit status."""
+    codes = []
+    for number, name in enumerate(arguments.name):
+        text = explanation(name)
+        if text is None:
+            complain(f"'{name}' is not known; {_near(name)}")
+            codes.append(status.USAGE)
+        else:
+            sys.stdout.write(("\n" if number else "") + text.strip("\n") + "\n")
+            codes.append(status.CLEAR)
+    return status.USAGE if status.USAGE in codes else status.CLEAR
+
+
+def explanation(name: str) -> str | None:
+    """Everything known about a name as text, None when nothing is."""
+    parts = [page.read_text("utf-8") for key, page in pages() if key == name]
+    parts += [text for text in (_clause(name), _unit(name)) if text]
+    return "\n\n".join(part.strip("\n") for part in parts) if parts else None
+
+
+def pages() -> list[tuple[str, Path]]:
+    """(name, file) of every page: steps, checks, and what verify can find."""
+    from wellseq.base.data import data_folder
+
+    folders = (
+        data_folder("grammar") / "steps",
+        data_folder("safety") / "checks",
+        data_folder("safety") / "verify",
+    )
+    return [(page.stem, page) for folder in folders for page in sorted(folder.glob("*.md"))]
+
+
+def _clause(name: str) -> str:
+    """Which steps take a clause or a bare word of this name, and what stands after it."""
+    from wellseq.base.names import RESERVED
+    from wellseq.model.step import clauses_of
+    from wellseq.model.steps import verbs
+
+    found = []
+    for verb, kind in sorted(verbs().items()):
+        for word, takes in clauses_of(kind):
+            if word == name:
+                found.append(f"  {verb}: {takes}")
+    if found:
+        return f"`{name}` is a word of these steps:\n" + "\n".join(found)
+    return f"`{name}` is a word of the language; no name may be one." if name in RESERVED else ""
+
+
+def _unit(name: str) -> str:
+    """What a unit word is in base units."""
+    from wellseq.base.quantity import QuantityError, kind_name, unit_of
+
+    try:
+        factor, kind = unit_of(name)
+    except QuantityError:
+        return ""
+    if not name:
+        return ""
+    return f"`{name}` is a unit: 1 {name} = {_number(factor)} {kind_name(kind)}"
+
+
+def _number(factor: object) -> str:
+    return f"{float(str(factor)) if '/' not in str(factor) else _quotient(str(factor)):g}"
+
+
+def _quotient(text: str) -> float:
+    top, _, bottom = text.partition("/")
+    return int(top) / int(bottom)
+
+
+def _near(name: str) -> str:
+    from wellseq.base.names import RESERVED, nearest
+    from wellseq.base.quantity import UNITS
+
+    known = {key for key, _ in pages()} | RESERVED | set(UNITS)
+    return nearest(name, known, "known names")

@@ -1,0 +1,79 @@
+"""What several commands share: options for findings and for `let`, and printing of reports."""
+
+from __future__ import annotations
+
+import argparse
+import sys
+from collections.abc import Sequence
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from wellseq.cli import status
+from wellseq.cli.terminal import colour_here, width_here
+
+if TYPE_CHECKING:
+    from wellseq.emit.examined import Examined
+
+
+def add_format(parser: argparse.ArgumentParser) -> None:
+    """`--format` and `--margins`."""
+    # The forms are read off the folder: importing them would load numpy for a mere --help.
+    folder = Path(__file__).parent.parent / "emit" / "reports"
+    names = sorted(file.stem for file in folder.glob("*.py") if file.stem != "__init__")
+    parser.add_argument(
+        "--format", choices=names, default="text", help="how findings are written (text)"
+    )
+    parser.add_argument(
+        "--margins",
+        action="store_true",
+        help="also show what passes, the nearest to its limit first",
+    )
+
+
+def add_lets(parser: argparse.ArgumentParser) -> None:
+    """`--let NAME=VALUE`, any number of times."""
+    parser.add_argument(
+        "--let",
+        action="append",
+        default=[],
+        type=_let,
+        metavar="NAME=VALUE",
+        help="another value for a `let` of the file, for example 'wall=80 V'",
+    )
+
+
+def lets_of(arguments: argparse.Namespace, parser_error: str = "") -> dict[str, str]:
+    """The values given by `--let`; the last one of a name counts."""
+    return dict(arguments.let)
+
+
+def _let(text: str) -> tuple[str, str]:
+    name, sign, value = text.partition("=")
+    if not sign or not name.strip() or not value.strip():
+        raise argparse.ArgumentTypeError(f"'{text}' is not NAME=VALUE")
+    return name.strip(), value.strip()
+
+
+def print_report(things: Sequence[Examined], arguments: argparse.Namespace) -> None:
+    """Write the findings in the form that was asked for to standard output."""
+    from wellseq.emit.formats import Options, report
+
+    options = Options(colour_here(), arguments.margins, width_here())
+    sys.stdout.write(report(arguments.format, things, options))
+
+
+def status_of(thing: Examined) -> int:
+    """The exit status that one examined file comes to."""
+    if thing.clear:
+        return status.CLEAR
+    blocking = [finding for finding in thing.findings if finding.blocks]
+    if any(finding.name in ("unreadable-file", "folder-unreadable") for finding in blocking):
+        return status.NO_INPUT
+    if any(finding.place.file.endswith(".toml") for finding in blocking):
+        return status.WRONG_TRAP
+    return status.FINDINGS
+
+
+def complain(sentence: str) -> None:
+    """One sentence on standard error."""
+    sys.stderr.write(f"wellseq: {sentence}\n")

@@ -1,0 +1,126 @@
+"""argv → exit status: finds the command, runs it, and turns every failure into one sentence.
+
+Nothing heavy is imported here, nor by a command before it runs, so that `--help` answers at once.
+"""
+
+from __future__ import annotations
+
+import argparse
+import os
+import sys
+import traceback
+from collections.abc import Sequence
+from importlib import import_module
+from pathlib import Path
+from types import ModuleType
+from typing import NoReturn
+
+from wellseq.cli import status
+from wellseq.cli.terminal import prepare
+from wellseq.version import __version__
+
+DESCRIPTION = "Compile a sequence for the electrodes of a Penning-Malmberg trap, or say why not."
+EPILOGUE = """\
+exit status: 0 everything was examined and passes; 1 findings; 64 usage; 66 input missing or
+unreadable; 70 a fault of wellseq; 73 output cannot be written; 78 the trap file is wrong.
+
+example: wellseq check evening.well"""
+
+
+class Parser(argparse.ArgumentParser):
+    """argparse with the exit status 64 for wrong usage and no guessing at cut-off options."""
+
+    def __init__(self, **arguments: object) -> None:
+        super().__init__(
+            allow_abbrev=False,
+            formatter_class=argparse.RawDescriptionHelpFormatter,
+            **arguments,  # type: ignore[arg-type]
+        )
+
+    def error(self, message: str) -> NoReturn:
+        self.print_usage(sys.stderr)
+        self.exit(status.USAGE, f"wellseq: {message}\n")
+
+
+def main(argv: Sequence[str] | None = None) -> int:
+    """Run one command; returns the exit status and never lets an exception out.
+
+    With WELLSEQ_DEBUG=1 a fault of wellseq shows its traceback.
+    """
+    prepare(sys.stdout)
+    prepare(sys.stderr)
+    try:
+        code = _run(argv)
+        sys.stdout.flush()
+        return code
+    except SystemExit as leaving:
+        return leaving.code if isinstance(leaving.code, int) else status.CLEAR
+    except KeyboardInterrupt:
+        return status.INTERRUPTED
+    except OSError as error:
+        if error.filename is not None:
+            return _our_fault(error)
+        return _no_output(error)
+    except Exception as error:
+        return _our_fault(error)
+
+
+def _run(argv: Sequence[str] | None) -> int:
+    arguments = parser().parse_args(argv)
+    code: int = arguments.run(arguments)
+    return code
+
+
+def parser() -> Parser:
+    """The whole command line; every command adds its own arguments."""
+    whole = Parser(prog="wellseq", description=DESCRIPTION, epilog=EPILOGUE)
+    whole.add_argument("--version", action="version", version=f"wellseq {__version__}")
+    commands = whole.add_subparsers(title="commands", metavar="COMMAND", required=True)
+    for name in command_names():
+        module = command(name)
+        says = (module.__doc__ or "").splitlines()[0]
+        one = commands.add_parser(
+            name, help=says, description=says, epilog=f"example: {module.EXAMPLE}"
+        )
+        module.add_arguments(one)
+        one.set_defaults(run=module.run)
+    return whole
+
+
+def command_names() -> tuple[str, ...]:
+    """The names of all commands, in alphabetical order."""
+    folder = Path(__file__).parent / "commands"
+    return tuple(sorted(file.stem for file in folder.glob("*.py") if file.stem != "__init__"))
+
+
+def command(name: str) -> ModuleType:
+    """The module of a command: EXAMPLE, add_arguments(parser), run(arguments) -> exit status."""
+    return import_module(f"wellseq.cli.commands.{name}")
+
+
+def _no_output(error: OSError) -> int:
+    """Standard output is gone or full: nothing more can be said on it."""
+    # What is still buffered would fail again when the interpreter ends.
+    os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+    if not isinstance(error, BrokenPipeError):
+        reason = (error.strerror or "it is not there").lower()
+        sys.stderr.write(f"wellseq: standard output cannot be written: {reason}\n")
+    return status.NO_OUTPUT
+
+
+def _our_fault(error: Exception) -> int:
+    if os.environ.get("WELLSEQ_DEBUG") == "1":
+        traceback.print_exc()
+    sys.stderr.write(
+        f"wellseq: this is a fault of wellseq itself ({type(error).__name__}: {_one_line(error)}); "
+        "please report it with the files that led to it. WELLSEQ_DEBUG=1 shows where it happened.\n"
+    )
+    return status.OUR_FAULT
+
+
+def _one_line(error: Exception) -> str:
+    return " ".join(str(error).split())[:200]
+
+
+if __name__ == "__main__":
+    sys.exit(main())
