@@ -84,8 +84,8 @@ def test_the_last_jump_of_the_last_block_has_all_time(make):
 
 def test_a_jump_at_the_end_has_until_the_next_block_changes_it(make):
     # From the last row it takes 3 us at least until the first row after the trigger.
-    assert rows(make, [0, 1, 2], [0, 0, 31], blocks=2) == ["pass"]
-    assert rows(make, [0, 1, 2], [0, 0, 32], blocks=2) == ["fail", "pass"]
+    assert rows(make, [0, 3, 4], [0, 0, 31], blocks=2) == ["pass"]
+    assert rows(make, [0, 3, 4], [0, 0, 32], blocks=2) == ["fail", "pass"]
 
 
 def test_a_card_that_draws_lines_has_from_row_to_row(make):

@@ -29,6 +29,7 @@ POWERS |= {
     "/m3": (Fraction(1), {"m": -3}),
     "/cm3": (Fraction(10**6), {"m": -3}),
 }
+_WRITTEN = re.compile(r"\s*(-?[0-9.]+(?:[eE][+-]?[0-9]+)?)\s*([A-Za-z/%]\S*)?\s*")
 
 
 @dataclass(frozen=True)
@@ -64,7 +65,9 @@ def quotient(one: Value, other: Value) -> Value:
 
 def read(text: str) -> Fraction:
     """The centre of a text such as `1.0003 ± 0.0001` or `12 V/us`, in base units."""
-    number, unit = re.fullmatch(r"\s*(-?[0-9.eE+-]+?)\s*([^\d\s]\S*)?\s*", text.split("±")[0]).groups()
+    match = _WRITTEN.fullmatch(text.split("±")[0])
+    assert match, text
+    number, unit = match.groups()
     return with_unit(Fraction(number), unit or "").number
 
 
@@ -135,6 +138,10 @@ class PlainTrap:
         clocks = [*self.clocks, *(read(line["clock"]) for line in self.lines.values())]
         common = lcm(*(clock.denominator for clock in clocks))
         return Fraction(gcd(*(int(clock * common) for clock in clocks)), common)
+
+    def line_clock(self, line: str) -> Fraction:
+        """The clock of a digital line, s."""
+        return read(self.lines[line]["clock"])
 
     def shares(self, output: str) -> list[str]:
         """The electrodes on an output."""

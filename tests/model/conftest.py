@@ -41,7 +41,8 @@ def _trap_text() -> str:
             'edge = "90 ns"\nclock = "10 ns"\n'
         )
     parts.append(
-        '[[line]]\nname = "valve"\nstates = ["closed", "open"]\ninitial = "closed"\nclock = "1 us"\n'
+        '[[line]]\nname = "valve"\nstates = ["closed", "open"]\ninitial = "closed"\n'
+        'clock = "1 us"\n'
         '[[line]]\nname = "bias"\nstates = ["off", "on"]\ninitial = "off"\nclock = "1 us"\n'
         '[[line]]\nname = "gauge"\nstates = ["off", "on"]\nkind = "input"\nclock = "1 us"\n'
         '[[trigger]]\nname = "arrival"\nwithin = "130 s"\nlatency = "250 ns"\njitter = "20 ns"\n'
@@ -112,7 +113,11 @@ class Bench:
         lines = text.split("\n")
         found = [m for m in self.build(text).mistakes if m.name != "name-unused"]
         return [
-            (m.name, lines[m.place.line - 1][m.place.column - 1 : m.place.end_column - 1], m.message)
+            (
+                m.name,
+                lines[m.place.line - 1][m.place.column - 1 : m.place.end_column - 1],
+                m.message,
+            )
             for m in found
         ]
 
@@ -142,7 +147,8 @@ def sandpit(tmp_path_factory: pytest.TempPathFactory) -> Trap:
     path = tmp_path_factory.mktemp("trap") / "sandpit.trap.toml"
     path.write_text(TRAP_TEXT)
     trap, mistakes = read_trap(path, "sandpit.trap.toml")
-    assert mistakes == () and trap is not None
+    assert mistakes == ()
+    assert trap is not None
     return trap
 
 

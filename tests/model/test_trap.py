@@ -20,7 +20,7 @@ from wellseq.model.trap import (
     Trap,
     Trigger,
 )
-from wellseq.model.trap_file import read_trap
+from wellseq.model.trap_file import read_trap, trap_from
 
 POOL = Path(__file__).with_name("pool.trap.toml")
 
@@ -171,8 +171,6 @@ def test_a_trap_is_frozen_and_hashable(pool: Trap) -> None:
 
 def test_composed_and_decomposed_names_are_the_same() -> None:
     source = POOL.read_text(encoding="utf-8").replace("R2", "Ré")
-    from wellseq.model.trap_file import trap_from
-
     trap, mistakes = trap_from(source.replace("é", "e\u0301"), "pool")
     assert mistakes == ()
     assert trap is not None

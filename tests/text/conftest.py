@@ -6,6 +6,7 @@ from collections.abc import Callable
 from typing import Any
 
 import pytest
+
 from wellseq.base.finding import Mistake
 from wellseq.text.parse import parse
 from wellseq.text.tree import (

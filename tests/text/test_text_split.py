@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import pytest
+
 from wellseq.text.parse import parse
 from wellseq.text.split import NESTING_MAX, OPERATORS_MAX, STATEMENT_LENGTH_MAX
 

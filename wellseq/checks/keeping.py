@@ -16,7 +16,7 @@ from wellseq.base.finding import Limit, Reading, Verdict
 Floats = npt.NDArray[np.float64]
 
 FIGURES = 12
-"""Significant figures of a quotient or a sum that is judged, and of its limit: a ramp written exactly
+"""Significant figures of a quotient or sum that is judged, and of its limit: a ramp written exactly
 at a slew must not fail by the dust of a division."""
 
 
@@ -54,11 +54,10 @@ def telling(
     bound = sign * np.broadcast_to(
         np.asarray(limit.value if bounds is None else bounds, dtype=float), worst.shape
     )
-    known = np.isfinite(worst) & np.isfinite(best) & np.isfinite(bound)
-    passing = known & (worst <= bound)
-    failing = known & (best > bound)
-    with np.errstate(invalid="ignore"):
-        margins = np.where(known, bound - worst, -np.inf)
+    known = ~np.isnan(worst) & ~np.isnan(best) & np.isfinite(bound)
+    passing = known & np.isfinite(worst) & (worst <= bound)
+    failing = known & np.isfinite(best) & (best > bound) & ~passing
+    margins = np.where(known, bound, -np.inf) - np.where(known, worst, 0.0)
     group, step = np.asarray(groups, dtype=np.int64), np.asarray(steps, dtype=np.int64)
     kept: list[int] = []
     for chosen, keys in (

@@ -3,7 +3,8 @@
 On a segment of the motion the wished voltages are base + Σ p_k moves_k with every p_k from 0 to 1,
 so that the difference of two electrodes, being affine in each p_k, is greatest in size where each
 p_k is 0 or 1.  With one progress both ends are surely reached; with several, the ends of the
-segment are, and the worst corner may be.  What the electrodes may differ from their wish is the uncertainty.
+segment are, and the worst corner may be.  What the electrodes may differ from their wish is the
+uncertainty.
 """
 
 from __future__ import annotations

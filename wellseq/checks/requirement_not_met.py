@@ -60,12 +60,14 @@ def _reading(
     low, high = interval
     what = _worded(claim)
     found = amount(low, limit.unit)
-    if high != low and not math.isnan(high):
+    if math.isinf(high):
+        found = f"at least {found}"
+    elif high != low and not math.isnan(high):
         found = f"from {found} to {amount(high, limit.unit)}"
     side = "above" if limit.side == "at least" else "below"
     return Reading(
-        value=(low + high) / 2,
-        uncertainty=(high - low) / 2,
+        value=low if math.isinf(high) else (low + high) / 2,
+        uncertainty=0.0 if math.isinf(high) else (high - low) / 2,
         between=interval,
         limit=limit,
         message=f"{what} is {found}, required {side} {{limit}}",
@@ -115,10 +117,11 @@ class _Measured:
     def _lost(self, claim: Claimed, window: Window) -> bool:
         """Whether one of the claim's clouds could not be followed in a window."""
         clouds = {claim.cloud, claim.other}
+        first, last = _rounded(window)
         return any(
             end.cloud in clouds
-            and window[0] <= (end.block, end.end_s)
-            and (end.block, end.start_s) <= window[1]
+            and first <= (end.block, end.end_s)
+            and (end.block, end.start_s) < last
             for end in self.wells.unproved
         )
 
@@ -130,11 +133,10 @@ class _Measured:
             return NOT_KNOWN
         if window is not None:
             return track.least(window)
-        # Before any step took time there is no stretch to look back on: the stretch that begins
-        # here is at least as shallow as the state at its beginning.
+        # Before any step took time there is no stretch to look back on; the least of the one that
+        # begins here bounds the state at its beginning from below.
         index = track.at(place)
-        low = math.nan if index is None else float(track.low[index])
-        return (low, low) if limit.side == "at least" else NOT_KNOWN
+        return NOT_KNOWN if index is None else (float(track.low[index]), math.inf)
 
     @cached_property
     def _depths(self) -> dict[tuple[str, str], Track]:
@@ -171,7 +173,7 @@ class _Measured:
         if not claim.throughout or window is None:
             return here
         track = self._distances.get(frozenset((claim.cloud, claim.other)))
-        low = track.least(window)[0] if track is not None else math.nan
+        low = track.least(_rounded(window))[0] if track is not None else math.nan
         # Two clouds of one well have no distance on record: it is nothing.
         return (0.0 if math.isnan(low) else min(low, here[0])), here[1]
 
@@ -195,6 +197,12 @@ class _Measured:
         if (held.block, held.start_s) == place:
             return held.from_m, held.from_m
         return held.well_m
+
+
+def _rounded(window: Window) -> Window:
+    """The same window in floats, to be compared with moments that were rounded once."""
+    (block, start), (last_block, end) = window
+    return (block, float(start)), (last_block, float(end))
 
 
 def _least(one: float, other: float) -> float:

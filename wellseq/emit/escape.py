@@ -6,7 +6,7 @@ import re
 
 from wellseq.base.names import printable
 
-_MARKDOWN = re.compile(r"([\\`*_{}\[\]()<>#+!|~&-])")
+_MARKDOWN = re.compile(r"([\\`*_\[\]<>#|~&]|^[-+=])")
 _FORMULA = ("=", "+", "-", "@", "\t", "\r")
 _UNSAFE = re.compile(r"[^A-Za-z0-9_-]+")
 

@@ -1,11 +1,11 @@
 """Unit potentials on disk, found again by content: the same geometry is solved only once.
 
-An entry is a plain `.npy` file named by its key, followed by 32 bytes of SHA-256 over the key and the
-file; NumPy reads it as it is (what follows the array is ignored), never with pickle.  The key is the
-SHA-256 of everything the numbers depend on and of nothing else: no time, no path.  An entry that is
-cut short, altered, of another shape or under another name is ignored and built anew.  A folder that
-cannot be written is no cache, silently.  Writers move a finished file into place, so readers and
-other writers never meet half an entry.  At most 64 entries stay; the oldest go.
+An entry is a plain `.npy` file named by its key, followed by 32 bytes of SHA-256 over the key and
+the file; NumPy reads it as it is (what follows the array is ignored), never with pickle.  The key
+is the SHA-256 of everything the numbers depend on and of nothing else: no time, no path.  An entry
+that is cut short, altered, of another shape or under another name is ignored and built anew.  A
+folder that cannot be written is no cache, silently.  Writers move a finished file into place, so
+readers and other writers never meet half an entry.  At most 64 entries stay; the oldest go.
 
 Folder: $WELLSEQ_CACHE, else `wellseq` in the platform's cache folder.
 """

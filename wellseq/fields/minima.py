@@ -1,24 +1,26 @@
-"""The potential along the axis → its wells: every local minimum of U = sign · φ, and how deep it is.
+"""The potential along the axis → its wells: every local minimum of U = sign · φ, and how deep it
+is.
 
-Extrema are the zeros of U′: intervals where the Bernstein controls of U′ differ in sign are searched
-at sixteen points each, so two zeros between neighbouring nodes are found as well; each is polished by
-Newton's rule.  Minima are merged across a barrier lower than the *ripple* (flat bottoms have dimples
-of no meaning): always the lowest barrier first, the shallower minimum is dropped.  Outside is the
+Extrema are the zeros of U′: intervals where the Bernstein controls of U′ differ in sign are
+searched at sixteen points each, so two zeros between neighbouring nodes are found as well; each is
+polished by Newton's rule.  Minima are merged across a barrier lower than the *ripple* (flat bottoms
+have dimples of no meaning): always the lowest barrier first, the shallower minimum is dropped.
+Outside is the
 grounded tube at 0 V, a neighbour like any other.  *Own* depth reaches to the nearest remaining
 neighbour, *trap* depth out to the ends and the outside.
 
 Units: m, V; depths in V per elementary charge; curvature V/m².
-Accuracy: tests/fields/test_minima.py.  Source of the merging: H. Edelsbrunner, J. Harer, Computational
-Topology (AMS 2010) ch. VII (persistence of minima).
+Accuracy: tests/fields/test_minima.py.  Source of the merging: H. Edelsbrunner, J. Harer,
+Computational Topology (AMS 2010) ch. VII (persistence of minima).
 """
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 
-from wellseq.fields.hermite import Curve, FloatArray
+from wellseq.fields.hermite import POWERS, Curve, FloatArray
 
 RIPPLE_V = 1e-3
 _POINTS = 16
@@ -29,7 +31,8 @@ class Well:
     """A local minimum of U = sign · φ on the axis.
 
     `depth_V` is the own depth on the lower side, `depth_left_V` and `depth_right_V` on each (to the
-    nearest neighbouring minimum); `trap_depth_V` reaches out to the ends, lower side.  `curvature_V_m2`
+    nearest neighbouring minimum); `trap_depth_V` reaches out to the ends, lower side.
+    `curvature_V_m2`
     is U″ ≥ 0, `potential_V` is φ (not U) at the minimum.
     """
 
@@ -46,8 +49,9 @@ class Well:
 class Landscape:
     """Minima (k,) of U from left to right, and the barriers (k + 1,) around them; m and V.
 
-    Barrier i lies left of minimum i.  An outermost barrier without an extremum is the outside (0 V),
-    placed at the end of the axis.  `low_m`, `high_m` (k,): span of the minima that share one floor.
+    Barrier i lies left of minimum i.  An outermost barrier without an extremum is the outside (0
+    V), placed at the end of the axis.  `low_m`, `high_m` (k,): span of the minima that share one
+    floor.
     """
 
     minimum_m: FloatArray
@@ -64,10 +68,19 @@ class Landscape:
 
 
 def extrema(curve: Curve) -> tuple[FloatArray, FloatArray, FloatArray]:
-    """All extrema on the axis from left to right: z (m), U (V), and +1 for minima, −1 for maxima."""
-    slope = curve.controls(1)
+    """All extrema from left to right: z (m), U (V), and +1 for minima, −1 for maxima; (k,) each.
+
+    The curve remembers them.
+    """
+    if curve.turns is None:
+        curve.turns = _extrema(curve)
+    return curve.turns
+
+
+def _extrema(curve: Curve) -> tuple[FloatArray, FloatArray, FloatArray]:
     nodes = curve.nodes[1]
-    mixed = np.flatnonzero((slope.max(axis=0) >= 0) & (slope.min(axis=0) <= 0))
+    slope_low, slope_high = curve.bounds(1)
+    mixed = np.flatnonzero((slope_high >= 0) & (slope_low <= 0))
     inner = (mixed[:, None] + np.arange(1, _POINTS) / _POINTS).ravel()
     place = np.concatenate((np.arange(nodes.size), inner))
     value = np.concatenate((nodes, curve.at(curve.start_m + curve.step_m * inner, 1)))
@@ -76,21 +89,23 @@ def extrema(curve: Curve) -> tuple[FloatArray, FloatArray, FloatArray]:
     moving = np.flatnonzero(value)
     place, value = place[moving], value[moving]
     turn = np.flatnonzero(np.signbit(value[:-1]) != np.signbit(value[1:]))
-    z_m = _polish(curve, place[turn], place[turn + 1], value[turn], value[turn + 1])
+    z_m = _polish(curve, place[turn], place[turn + 1])
     return z_m, curve.at(z_m), np.sign(value[turn + 1])
 
 
-def _polish(
-    curve: Curve, low: FloatArray, high: FloatArray, low_value: FloatArray, high_value: FloatArray
-) -> FloatArray:
-    """Zeros of U′ between brackets given in steps: the chord's, then Newton kept inside."""
-    place = low + (high - low) * low_value / (low_value - high_value)
-    for _ in range(4):
-        z_m = curve.start_m + curve.step_m * place
-        bend = curve.at(z_m, 2) * curve.step_m
-        safe = np.where(bend == 0.0, np.inf, bend)
-        place = np.clip(place - curve.at(z_m, 1) / safe, low, high)
-    return np.asarray(curve.start_m + curve.step_m * place)
+def _polish(curve: Curve, low: FloatArray, high: FloatArray) -> FloatArray:
+    """Zeros (m) of U′ between brackets given in steps, by Newton's rule kept inside them."""
+    interval = np.floor((low + high) / 2)
+    low, high = np.clip(low - interval, 0.0, 1.0), np.clip(high - interval, 0.0, 1.0)
+    power = POWERS @ curve.controls(1)[:, interval.astype(np.intp)]
+    t = (low + high) / 2
+    for _ in range(5):
+        slope, bend = power[5], 0.0
+        for coefficient in power[4::-1]:
+            bend = bend * t + slope
+            slope = slope * t + coefficient
+        t = np.clip(t - slope / np.where(bend == 0.0, np.inf, bend), low, high)
+    return np.asarray(curve.start_m + curve.step_m * (interval + t))
 
 
 def landscape(curve: Curve, ripple_V: float = RIPPLE_V) -> Landscape:
@@ -115,7 +130,7 @@ def landscape(curve: Curve, ripple_V: float = RIPPLE_V) -> Landscape:
 def _merge(value: FloatArray, ripple_V: float) -> list[int]:
     """Indices kept of a sequence barrier, minimum, barrier, …, barrier."""
     kept = list(range(value.size))
-    while len(kept) > 1:
+    while len(kept) > 2:
         level = value[kept]
         rise = np.minimum(level[:-1:2], level[2::2]) - level[1::2]
         least = int(rise.argmin())
@@ -147,7 +162,7 @@ def wells(
     between_m: tuple[float, float] | None = None,
     ripple_V: float = RIPPLE_V,
 ) -> list[Well]:
-    """All wells of U (the curve of sign · φ, in V), from left to right, those inside `between_m` (m)."""
+    """All wells of U (the curve of sign · φ, V) from left to right, inside `between_m` (m)."""
     found = landscape(curve, ripple_V)
     result = []
     bend = curve.at(found.minimum_m, 2)
@@ -167,8 +182,3 @@ def wells(
         )
         result.append(well)
     return result
-
-
-def at_volts(well: Well, potential_V: float) -> Well:
-    """The same well with φ at its minimum replaced (V)."""
-    return replace(well, potential_V=potential_V)

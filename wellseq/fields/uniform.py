@@ -1,18 +1,20 @@
 """A stack of electrodes in one bore → the potential of each at 1 V, on and off the axis.
 
-Laplace's equation in a tube of radius a whose wall carries f_e(z): 1 on electrode e, 0 on all others
-and on the grounded tube that goes on beyond the stack, straight in between across a gap.  Fourier
-transform along z:  phi_e(r, z) = (1/2π) ∫ F_e(k) I0(kr)/I0(ka) e^{ikz} dk,  F_e the transform of f_e;
-derivatives multiply it by (ik)^m and are never differenced.  The integral is a sum over a periodic
-box (an inverse real FFT), exponentially exact: its images stand 16 a away and weigh e^{−2.405·16}.
-A real gap of width g acts on the axis as a straight one of 1.1027 g (second moment of the mouth
-field of a deep slot); the rule is good to about 2e-6 V/V at g = 0.1 a and 1.5e-5 at 0.2 a.
+Laplace's equation in a tube of radius a whose wall carries f_e(z): 1 on electrode e, 0 on all
+others and on the grounded tube that goes on beyond the stack, straight in between across a gap.
+Fourier
+transform along z:  phi_e(r, z) = (1/2π) ∫ F_e(k) I0(kr)/I0(ka) e^{ikz} dk,  F_e the transform of
+f_e; derivatives multiply it by (ik)^m and are never differenced.  The integral is a sum over a
+periodic box (an inverse real FFT), exponentially exact: its images stand 16 a away and weigh
+e^{−2.405·16}. A real gap of width g acts on the axis as a straight one of 1.1027 g (second moment
+of the mouth field of a deep slot); the rule is good to about 2e-6 V/V at g = 0.1 a and 1.5e-5 at
+0.2 a.
 
 Shapes: unit potentials (radii, orders, electrodes, nz).  Units: m, V per V, V/m^n per V.
 Accuracy: 1e-12 V/V, tests/fields/test_uniform.py; gaps against finite elements of real slots,
 tests/fields/test_elements.py.
-Source: J. D. Jackson, Classical Electrodynamics, 3rd ed. (Wiley 1999) sec. 3.7-3.8; Bessel functions
-by numpy.i0 (6e-16), which overflows only beyond 713, where the quotient is below e^{−70}.
+Source: J. D. Jackson, Classical Electrodynamics, 3rd ed. (Wiley 1999) sec. 3.7-3.8; Bessel
+functions by numpy.i0 (6e-16), which overflows only beyond 713, where the quotient is below e^{−70}.
 """
 
 from __future__ import annotations
@@ -23,9 +25,11 @@ from math import ceil
 from typing import Protocol
 
 import numpy as np
+from numpy.typing import NDArray
 
 from wellseq.fields.hermite import QUINTIC_ERROR, FloatArray
 
+ComplexArray = NDArray[np.complex128]
 METHOD = "uniform bore, Fourier box, 1"
 GAP_FACTOR = 1.1027
 SLOWEST_MODE = 2.404825557695773
@@ -43,7 +47,7 @@ _NYQUIST_STEPS = 14
 
 
 class Electrode(Protocol):
-    """What this floor needs of an electrode: its name, its span along the axis and its bore, in m."""
+    """What this floor needs of an electrode: name, span along the axis and inner radius, in m."""
 
     @property
     def name(self) -> str: ...
@@ -79,7 +83,7 @@ class Axis:
     @property
     def z_m(self) -> FloatArray:
         """The points (count,), in m."""
-        return self.start_m + self.step_m * np.arange(self.count)
+        return np.asarray(self.start_m + self.step_m * np.arange(self.count))
 
 
 def stack_of(electrodes: Sequence[Electrode]) -> Stack:
@@ -146,7 +150,8 @@ def unit_potentials(
 ) -> FloatArray:
     """Derivatives along z of every electrode's potential at 1 V, in V/m^order per V.
 
-    Returns (radii, orders, electrodes, axis.count).  Raises ValueError beyond 0.9 of the bore radius.
+    Returns (radii, orders, electrodes, axis.count).  Raises ValueError beyond 0.9 of the bore
+    radius.
     """
     radii, powers = tuple(radii_m), tuple(orders)
     box = _Box(stack, axis, max(map(abs, radii), default=0.0))
@@ -193,8 +198,8 @@ class _Box:
         self.points = _smooth_even(ceil((reach + IMAGE_RADII * a) / self.step_m))
         self.k = 2 * np.pi / (self.points * self.step_m) * np.arange(self.points // 2 + 1)
 
-    def wall_amplitudes(self) -> FloatArray:
-        """Fourier transform of every electrode's wall potential (ne, nk), in m; complex."""
+    def wall_amplitudes(self) -> ComplexArray:
+        """Fourier transform of every electrode's wall potential (ne, nk), in m."""
         stack = self.stack
         edge = self._phases(stack.centre_m - self.axis.start_m)
         for width_m in np.unique(stack.width_m[stack.width_m > 0]):
@@ -204,7 +209,7 @@ class _Box:
         wall[:, 0] = np.diff(stack.centre_m)
         return wall
 
-    def potential(self, wall: FloatArray, radius_m: float, order: int) -> FloatArray:
+    def potential(self, wall: ComplexArray, radius_m: float, order: int) -> FloatArray:
         """The derivative of this order on the cylinder of radius r: (…, axis.count)."""
         weight = self._bessel_quotient(abs(radius_m)) * (1j * self.k) ** order / self.step_m
         line = np.fft.irfft(wall * weight, self.points, axis=-1)
@@ -217,14 +222,14 @@ class _Box:
         quotient[near] = np.i0(self.k[near] * radius_m) / np.i0(outer[near])
         return quotient
 
-    def _phases(self, place_m: FloatArray) -> FloatArray:
+    def _phases(self, place_m: FloatArray) -> ComplexArray:
         """exp(−ik·place) (places, nk): powers of two short tables, ten times fewer exponentials."""
         short = 64
         turn = -1j * self.k[1] * place_m[:, None]
         fine = np.exp(turn * np.arange(short))
         coarse = np.exp(turn * short * np.arange(-(-self.k.size // short)))
         table = coarse[:, :, None] * fine[:, None, :]
-        return table.reshape(place_m.size, -1)[:, : self.k.size]
+        return np.asarray(table.reshape(place_m.size, -1)[:, : self.k.size])
 
 
 def _smooth_even(count: int) -> int:

@@ -172,6 +172,7 @@ class _Build:
             body = self.planner.body(block, Names(scope))
         except TooLarge:
             return None
+        self._look_at_the_pick()
         if body.size <= STEPS_MAX:
             return body
         count = f"{body.size:,}" if body.size < 10**9 else "more than 1,000,000,000"
@@ -179,6 +180,16 @@ class _Build:
         place = header.sequence.operands[0].place
         self.reporter.add(Mistake("too-large", place, message))
         return None
+
+    def _look_at_the_pick(self) -> None:
+        """One value of an `each` can be asked for only where there is one."""
+        pick, names = self.planner.pick, [name for name, _ in self.planner.each.values()]
+        if pick is None or (names if isinstance(pick, int) else pick[0] in names):
+            return
+        said = "" if isinstance(pick, int) else f" that goes through '{printable(pick[0])}'"
+        near = self.reporter.near(pick[0], names, "each") if isinstance(pick, tuple) else ""
+        message = f"this file plays no `each`{said}"
+        self.reporter.add(Mistake("unknown-name", Place(self.tree.file), message, near))
 
     def _look_at_the_rest(self, header: Header, scope: FileScope) -> None:
         """Patterns and procedures that nothing called, and names that nothing uses."""

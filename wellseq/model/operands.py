@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from fractions import Fraction
 from typing import Any
 
-from wellseq.base.names import nearest, printable
+from wellseq.base.names import nearest, normal, printable
 from wellseq.base.place import Place
 from wellseq.base.quantity import Quantity, Spread, kind_of
 from wellseq.model.patterns import electrodes, read_pattern
@@ -168,7 +168,7 @@ def _text(slot: Slot, operands: tuple[Operand, ...], names: Names, chosen: Chose
         return names.report("syntax", operand.place, f"{_said(slot)} takes a text in quotes")
     if not operand.text.strip():
         return names.report("syntax", operand.place, f"{_said(slot)} says nothing")
-    return operand.text
+    return normal(operand.text) if slot.takes.what == "label" else operand.text
 
 
 def _choice(slot: Slot, operands: tuple[Operand, ...], names: Names, chosen: Chosen) -> object:

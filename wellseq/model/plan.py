@@ -11,7 +11,7 @@ from dataclasses import dataclass, field
 from fractions import Fraction
 from typing import NoReturn
 
-from wellseq.base.names import printable
+from wellseq.base.names import normal, printable
 from wellseq.base.place import Place
 from wellseq.model.declare import whole_number
 from wellseq.model.headers import INSIDE, OUTSIDE, fits
@@ -373,4 +373,4 @@ def _listed(value: Bound) -> Fraction | str:
 
 
 def _label(item: Statement) -> str:
-    return item.label.text if item.label is not None else ""
+    return normal(item.label.text) if item.label is not None else ""

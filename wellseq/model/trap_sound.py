@@ -14,6 +14,8 @@ from wellseq.base.names import nearest
 from wellseq.model.hardware import Converter, Electrode, Line, Part, Rest, Stretch, Switch, Trigger
 from wellseq.model.margins import PairMargin
 from wellseq.model.toml_places import Path
+from wellseq.model.written import is_name
+from wellseq.text.mistakes import quoted
 
 SECTIONS = {
     Electrode: "electrode",
@@ -115,7 +117,7 @@ def _reused(entries: Sequence[Entry]) -> Iterator[Fault]:
             continue
         other = first.setdefault(entry.name, entry)
         if other is not entry:
-            message = f"the name '{entry.name}' is already taken by {_called(other)}"
+            message = f"the name {_said(entry.name)} is already taken by {_called(other)}"
             hint = "electrodes, outputs, lines and triggers share their names"
             yield Fault((*entry.path, "name"), "name-reused", message, hint, (*other.path, "name"))
 
@@ -134,7 +136,7 @@ def _stack(stack: Sequence[Entry]) -> Iterator[Fault]:
             continue
         if entry.part.to_m <= entry.part.from_m:
             message = (
-                f"electrode '{entry.name}' ends at {_mm(entry.part.to_m)}, not after it begins"
+                f"electrode {_said(entry.name)} ends at {_mm(entry.part.to_m)}, not after it begins"
             )
             hint = f"'to' lies above {_mm(entry.part.from_m)}"
             yield Fault((*entry.path, "to"), "trap-not-sound", message, hint)
@@ -154,7 +156,8 @@ def _radii(stack: Sequence[Entry]) -> Generator[Fault, None, float]:
     for entry, part in parts:
         if part.radius_m != radius_m:
             message = "a stepped bore is not understood yet: every electrode needs the same radius"
-            hint = f"'{parts[0][1].name}' has {_mm(radius_m)}, '{part.name}' {_mm(part.radius_m)}"
+            first = quoted(parts[0][1].name)
+            hint = f"{first} has {_mm(radius_m)}, {quoted(part.name)} {_mm(part.radius_m)}"
             yield Fault((*entry.path, "radius"), "trap-not-sound", message, hint)
             break
     return radius_m
@@ -169,16 +172,22 @@ def _neighbours(left: Entry, right: Entry, radius_m: float) -> Iterator[Fault]:
     (left_from_m, left_to_m), (right_from_m, right_to_m) = _ends(left), _ends(right)
     gap_m = right_from_m - left_to_m
     if right_to_m <= left_from_m:
-        message = f"electrode '{right.name}' lies before '{left.name}'"
+        message = f"electrode {_said(right.name)} lies before {_said(left.name)}"
         yield Fault(path, "trap-not-sound", message, "list electrodes in order along the axis")
     elif gap_m < 0:
-        message = f"electrode '{right.name}' begins {_mm(-gap_m)} before '{left.name}' ends"
-        hint = f"'{left.name}' ends at {_mm(left_to_m)}; electrodes do not overlap"
+        message = (
+            f"electrode {_said(right.name)} begins {_mm(-gap_m)} before {_said(left.name)} ends"
+        )
+        hint = f"{_said(left.name)} ends at {_mm(left_to_m)}; electrodes do not overlap"
         yield Fault(path, "trap-not-sound", message, hint)
     elif right.number == left.number + 1 and gap_m > GAP_RADII_MAX * radius_m * (1 + DUST):
-        message = f"the gap between '{left.name}' and '{right.name}' is {_mm(gap_m)} wide"
+        message = f"the gap between {_said(left.name)} and {_said(right.name)} is {_mm(gap_m)} wide"
         hint = f"at most two radii, {_mm(GAP_RADII_MAX * radius_m)}; is an electrode missing?"
         yield Fault(path, "trap-not-sound", message, hint)
+
+
+def _said(name: str | None) -> str:
+    return "without a name" if name is None else quoted(name)
 
 
 def _mm(length_m: float) -> str:
@@ -211,14 +220,14 @@ def _stray(
     if entry.model is Switch:
         known = _names(item for item in outputs if item.model is Converter)
         what = "converter outputs"
-        message = f"'{word}' is " + ("another switch" if found else "no converter output")
+        message = f"{quoted(word)} is " + ("another switch" if found else "no converter output")
     else:
-        known, what, message = _names(outputs), "outputs", f"there is no output '{word}'"
+        known, what, message = _names(outputs), "outputs", f"there is no output {quoted(word)}"
     return Fault(path, "unknown-name", message, word=word, known=known, what=what)
 
 
 def _names(entries: Iterable[Entry]) -> tuple[str, ...]:
-    return tuple(entry.name for entry in entries if entry.name is not None)
+    return tuple(entry.name for entry in entries if entry.name and is_name(entry.name))
 
 
 def _unused(outputs: Sequence[Entry], used: set[str], strays: list[str]) -> Iterator[Fault]:
@@ -228,7 +237,7 @@ def _unused(outputs: Sequence[Entry], used: set[str], strays: list[str]) -> Iter
     meant = {meant_by(word, known) for word in strays[:STRAYS_MAX]}
     for entry in idle:
         if entry.name not in meant:
-            message = f"output '{entry.name}' drives no electrode and passes through no switch"
+            message = f"output {_said(entry.name)} drives no electrode and passes through no switch"
             hint = "name it as an electrode's output, or take it out"
             yield Fault((*entry.path, "name"), "name-unused", message, hint)
 
@@ -237,7 +246,7 @@ def _initials(entries: Sequence[Entry]) -> Iterator[Fault]:
     for entry in entries:
         line = entry.part
         if isinstance(line, Line) and line.initial not in line.states:
-            message = f"line '{line.name}' has no state '{line.initial}'"
+            message = f"line {quoted(line.name)} has no state {quoted(line.initial)}"
             yield Fault(
                 (*entry.path, "initial"),
                 "unknown-name",
@@ -259,18 +268,18 @@ def _pairs(stack: Sequence[Entry], pairs: Numbered) -> Iterator[Fault]:
                 yield Fault(
                     (*path, n),
                     "unknown-name",
-                    f"there is no electrode '{word}'",
+                    f"there is no electrode {quoted(word)}",
                     word=word,
                     known=_names(stack),
                     what="electrodes",
                 )
         one, other = pair.between
         if not strays and abs(numbers[one] - numbers[other]) != 1:
-            message = f"'{one}' and '{other}' are not next to each other"
+            message = f"{quoted(one)} and {quoted(other)} are not next to each other"
             yield Fault(path, "trap-not-sound", message, "a pair is two neighbouring electrodes")
         first = seen.setdefault(frozenset(pair.between), number)
         if first != number:
-            message = f"the pair of '{one}' and '{other}' is given twice"
+            message = f"the pair of {quoted(one)} and {quoted(other)} is given twice"
             yield Fault(path, "name-reused", message, see=("margins", "pair", first))
 
 
@@ -289,7 +298,7 @@ def _rests(
     for item in rest:
         path = ("rest", item.name)
         if item.name not in known:
-            message = f"there is no electrode or output '{item.name}'"
+            message = f"there is no electrode or output {quoted(item.name)}"
             yield Fault(path, "unknown-name", message, word=item.name, known=known, what="names")
             continue
         entry = drives.get(item.name) or by_name.get(item.name)
@@ -298,7 +307,9 @@ def _rests(
         yield from _rest_level(path, item, entry.part)
         first = given.setdefault(entry.part.name, item.name)
         if first != item.name:
-            message = f"the rest of output '{entry.part.name}' is given by '{first}' already"
+            message = (
+                f"the rest of output {quoted(entry.part.name)} is given by {quoted(first)} already"
+            )
             yield Fault(path, "name-reused", message, see=("rest", first))
     for entry in outputs:
         if isinstance(entry.part, Converter) and entry.part.name not in given:
@@ -309,23 +320,22 @@ def _rest_level(path: Path, item: Rest, output: Converter | Switch) -> Iterator[
     if isinstance(output, Switch):
         if item.level not in output.levels:
             levels = " or ".join(_level(level) for level in output.levels)
-            message = f"{_level(item.level)} is no level of switch '{output.name}'"
+            message = f"{_level(item.level)} is no level of switch {quoted(output.name)}"
             yield Fault(path, "trap-not-sound", message, f"its levels: {levels}")
     elif isinstance(item.level, str):
-        message = f"output '{output.name}' is a converter: its rest is in volts"
+        message = f"output {quoted(output.name)} is a converter: its rest is in volts"
         yield Fault(path, "unit-mismatch", message, 'for example "0 V"')
     elif not _within_reach(item.level, output):
         low_V, high_V = output.reach_V
-        message = f"output '{output.name}' cannot stand at {item.level:g} V"
+        message = f"output {quoted(output.name)} cannot stand at {item.level:g} V"
         yield Fault(path, "trap-not-sound", message, f"from {low_V:g} V to {high_V:g} V")
 
 
 def _zero_rest(entry: Entry, output: Converter) -> Iterator[Fault]:
     if not _within_reach(0.0, output):
         low_V, high_V = output.reach_V
-        message = (
-            f"output '{output.name}' cannot rest at 0 V: it reaches {low_V:g} V to {high_V:g} V"
-        )
+        reach = f"it reaches {low_V:g} V to {high_V:g} V"
+        message = f"output {quoted(output.name)} cannot rest at 0 V: {reach}"
         hint = f'say where it rests: [rest] {output.name} = "{low_V:g} V"'
         yield Fault((*entry.path, "range"), "trap-not-sound", message, hint)
 
@@ -338,4 +348,4 @@ def _within_reach(volts: float, output: Converter) -> bool:
 
 
 def _level(level: float | str) -> str:
-    return f"'{level}'" if isinstance(level, str) else f"{level:g} V"
+    return quoted(level) if isinstance(level, str) else f"{level:g} V"

@@ -162,7 +162,9 @@ def _combine(
             Share(left.value * right.value) if share else Quantity(left.value * right.value, kind)
         )
     elif not right.value:
-        return names.report("unit-mismatch", step.right.place, "this is zero, and nothing can be divided by it")
+        return names.report(
+            "unit-mismatch", step.right.place, "this is zero, and nothing can be divided by it"
+        )
     else:
         kind = tuple(a - b for a, b in zip(left.kind, right.kind, strict=True))
         share = kind == PLAIN and isinstance(left, Share) and not isinstance(right, Share)

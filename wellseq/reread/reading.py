@@ -13,7 +13,6 @@ from collections.abc import Iterator
 from fractions import Fraction
 
 EXACT = re.compile(r"-?(?:0|[1-9][0-9]{0,39})(?:/[1-9][0-9]{0,39})?")
-DEPTH_MAX = 16
 
 
 class Unsound(Exception):
@@ -34,8 +33,6 @@ def parse(content: bytes, file: str, name: str) -> Part:
     """
     try:
         text = content.decode("utf-8")
-        if _deepest(text) > DEPTH_MAX:
-            raise ValueError("it is nested too deeply")
         document = json.loads(text, object_pairs_hook=_unique, parse_constant=_no_constant)
     except (ValueError, RecursionError) as error:
         raise Unsound(name, file, f"this is not the JSON that wellseq writes: {error}") from error
@@ -54,23 +51,6 @@ def canonical(document: object) -> bytes:
     except ValueError:
         # An infinite number or half a character: never written, so never equal to what was read.
         return b""
-
-
-def _deepest(text: str) -> int:
-    depth = deepest = 0
-    quoted = escaped = False
-    for sign in text:
-        if quoted:
-            quoted = escaped or sign != '"'
-            escaped = sign == "\\" and not escaped
-        elif sign == '"':
-            quoted = True
-        elif sign in "[{":
-            depth += 1
-            deepest = max(deepest, depth)
-        elif sign in "]}":
-            depth -= 1
-    return deepest
 
 
 def _unique(pairs: list[tuple[str, object]]) -> dict[str, object]:

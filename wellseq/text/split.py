@@ -13,7 +13,7 @@ from wellseq.text.tokens import OPERATORS, Token
 from wellseq.text.tree import Assignment, Block, Statement
 
 NESTING_MAX = 64
-STATEMENT_LENGTH_MAX = 100_000
+STATEMENT_LENGTH_MAX = 50_000
 OPERATORS_MAX = 64
 STRAYS_MAX = 64
 
@@ -78,7 +78,7 @@ class Splitter:
             if after_newline:
                 after_newline = False
                 if frame.tokens and not _goes_on(frame.tokens, kind):
-                    if kind == "LBRACE":
+                    if kind == "LBRACE" and frame.tokens[-1].type != "BLOCK":
                         self._brace_on_next_line(token)
                     else:
                         self._end_statement()
@@ -190,7 +190,7 @@ class Splitter:
         tokens = self._frames[-1].tokens
         in_row = self._strays and (not tokens or tokens[-1].type == "BAD")
         self._strays = self._strays + 1 if in_row else 1
-        if self._strays == 1 or (token.line, token.column) in self._repairs.extra:
+        if self._strays == 1:
             message = f"this '{token.value}' closes nothing: {why}"
             self._mistakes.add("syntax", token.place, message, "delete it or open what it closes")
         elif self._strays > STRAYS_MAX:

@@ -114,14 +114,16 @@ class Drawing:
         origin = self.origins[-1]
         self.mistakes.append(Mistake(name, origin.place, message, hint, origin))
 
-    def take(self, kind: str, name: str) -> None:
+    def take(self, kind: str, name: str) -> bool:
         """Take a thing for the present lane, or say that a lane beside it has it."""
-        if not self.owners.take((kind, name)):
+        free = self.owners.take((kind, name))
+        if not free:
             self.refuse(
                 "lanes-clash",
                 f"{kind} '{name}' belongs to another lane of this alongside",
                 "let one lane drive it, or write the steps one after the other",
             )
+        return free
 
     # where electrodes stand
 
@@ -237,13 +239,7 @@ class Drawing:
 
     def set_line(self, line: str, state: str) -> None:
         """Put a digital output line into a state now."""
-        self.take("line", line)
-        if self._trap.line(line).kind == "input":
-            self.refuse(
-                "line-misused",
-                f"'{line}' is an input and cannot be set",
-                f"write: expect {line} {state}",
-            )
+        if not self.take("line", line):
             return
         if any(c.line == line and c.time_s == self.now for c in self.draft.changes[-64:]):
             self.refuse("line-misused", f"'{line}' is set twice at the same instant")
@@ -266,14 +262,7 @@ class Drawing:
     def await_trigger(self, trigger: str, within_s: Fraction | None) -> None:
         """End the block; the next one begins at the trigger."""
         declared = self._trap.trigger(trigger)
-        wait = within_s if within_s is not None else declared.within_s
-        if wait is None:
-            self.refuse(
-                "syntax",
-                f"nothing says how long to wait for '{trigger}'",
-                "add 'within' and a time here, or 'within' to the trigger in the trap file",
-            )
-            wait = Fraction(0)
+        wait = within_s or declared.within_s or Fraction(0)
         self._close()
         self.draft = self._draft(trigger, trigger, wait, declared.latency_s, declared.jitter_s)
 
@@ -331,9 +320,9 @@ class Drawing:
         asked: dict[str, str] = {}
         named = dict(targets)
         if others_V is not None:
-            for electrode in self._trap.electrodes:
-                if not isinstance(self._trap.output_of(electrode.name), Switch):
-                    named.setdefault(electrode.name, others_V)
+            for other in self._trap.electrodes:
+                if not isinstance(self._trap.output_of(other.name), Switch):
+                    named.setdefault(other.name, others_V)
         for electrode, volts in named.items():
             output = self.converter_behind(electrode)
             if output is None:

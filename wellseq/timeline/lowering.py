@@ -17,7 +17,7 @@ import numpy as np
 import numpy.typing as npt
 
 from wellseq.fields.following import follow, locate
-from wellseq.fields.inverse import Impossible, depth_path
+from wellseq.fields.inverse import Impossible, evaporation_path
 from wellseq.model import effects
 from wellseq.model.effects import Effect
 from wellseq.model.trap import Converter
@@ -78,7 +78,10 @@ class Trail:
         z_m = home.z_m if home.z_m is not None else self._between(drawing, cloud, home)
         if z_m is None:
             return None
-        z_m = locate(solved, sign, self.vectors[home.index], z_m)[0]
+        located = locate(solved, sign, self.vectors[home.index], z_m)
+        if located is None:
+            return None
+        z_m = located.z_m
         for before, after in pairwise(self.vectors[home.index :]):
             found = follow(solved, sign, before, after, z_m)
             if found is None:
@@ -130,23 +133,22 @@ def lower_depth(
         return
     solved = drawing.field_of()
     columns = [solved.electrodes.index(electrode) for electrode in electrodes]
-    reach = [converter.reach_V for converter in converters]
-    path = depth_path(
+    path = evaporation_path(
         solved,
         drawing.clouds[cloud].species.charge_sign,
         drawing.trail.vectors[-1],
         columns,
         z_m,
         to_V,
-        (max(low for low, _ in reach), min(high for _, high in reach)),
-        exponentially=exponentially,
+        [converter.reach_V for converter in converters],
+        equal_ratios=exponentially,
     )
     if isinstance(path, Impossible):
         drawing.refuse(
             "depth-not-reachable",
             f"no voltage of {', '.join(electrodes)} brings the own depth of '{cloud}' "
             f"to {to_V:g} V: {path.reason}",
-            f"nearest: {path.reached_V:.4g} V with {electrodes[0]} at {path.at_volts:.4g} V",
+            f"nearest: {path.reached_V:.4g} V with {electrodes[0]} at {path.at_volts[0]:.4g} V",
         )
         return
     start = drawing.now
@@ -154,8 +156,8 @@ def lower_depth(
         zip(path.fractions, path.volts, strict=True)
     ):
         part = duration_s * (Fraction(to_share) - Fraction(from_share))
-        for converter in converters:
-            drawing.move(converter.name, float(volts), part, Shape.STRAIGHT)
+        for converter, target in zip(converters, volts, strict=True):
+            drawing.move(converter.name, float(target), part, Shape.STRAIGHT)
         drawing.now += part
     drawing.now = start + duration_s
 

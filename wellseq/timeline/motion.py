@@ -49,7 +49,8 @@ class Segment:
 
     def end(self) -> Vector:
         """Wished volts (electrodes,) when every progress is 1."""
-        return self.base + self.moves.sum(axis=0)
+        reached: Vector = self.base + self.moves.sum(axis=0)
+        return reached
 
     def deviation_V(self) -> Vector:
         """Everything by which an electrode may differ from base + Σ p_k moves_k, summed, V."""
@@ -303,5 +304,7 @@ def _breakpoints(block: Block, windows: list[tuple[Fraction, Fraction]]) -> list
         times.update((start, end))
     for event in block.events:
         times.update((event.start_s, event.end_s))
+    for span in block.spans:
+        times.update((span.start_s, span.end_s))
     ordered = sorted(times)
     return ordered if len(ordered) > 1 else [Fraction(0), Fraction(0)]

@@ -94,7 +94,8 @@ class _Loading:
     # pieces that move with one progress
 
     def _load(self, group: list[Piece]) -> None:
-        holding, lining = [], []
+        holding: list[Piece] = []
+        lining: list[Piece] = []
         for piece in group:
             converter = self._converter(piece.output)
             (holding if converter.between_rows == "hold" else lining).append(piece)
@@ -270,7 +271,8 @@ def codes_of(converter: Converter, volts: Floats) -> Integers:
     nominal = (volts - converter.offset_V) / converter.gain
     share = np.clip(nominal, converter.low_V, converter.high_V) - converter.low_V
     codes: Integers = np.floor(share / converter.code_V + 0.5).astype(np.int64)
-    return np.minimum(codes, 2**converter.bits - 1)
+    highest: Integers = np.minimum(codes, 2**converter.bits - 1)
+    return highest
 
 
 def _groups(pieces: Iterable[Piece]) -> Iterator[list[Piece]]:

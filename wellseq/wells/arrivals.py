@@ -7,8 +7,10 @@ from typing import TYPE_CHECKING
 import numpy as np
 import numpy.typing as npt
 
-from wellseq.fields.following import locate
-from wellseq.fields.inverse import climb_outward, way_out
+from wellseq.fields.field import Field
+from wellseq.fields.following import Located, locate
+from wellseq.fields.inverse import Side, way_out
+from wellseq.fields.minima import extrema
 from wellseq.model import effects
 from wellseq.timeline.timeline import Event
 from wellseq.wells.living import Bunch, Well
@@ -71,28 +73,27 @@ class Arrivals:
         low, high = tracing.field.span_m(effect.electrode)
         sign = self._sign(cloud)
         found = locate(tracing.field, sign, vector, (low + high) / 2)
-        z_m, core = found
-        core_low, core_high = core if core is not None else (z_m, z_m)
-        if core_high < low or core_low > high:
+        if found is None or found.high_m < low or found.low_m > high:
+            where = "it would slide out of the stack"
+            if found is not None:
+                where = f"it would slide to z = {found.z_m * 1e3:.1f} mm"
+                where += self._electrode_at(found.z_m)
             tracing.fail(
                 Trouble.NOT_PLACED,
                 cloud,
                 event,
-                z_m,
-                f"there is no well for '{cloud}' at {effect.electrode}: "
-                f"the nearest is at z = {z_m * 1e3:.1f} mm{self._electrode_at(z_m)}",
-                "name the electrode whose potential is the bottom of the well",
+                (low + high) / 2,
+                f"there is no well for '{cloud}' at {effect.electrode}: {where}",
+                "name the electrode at the bottom of the well, and raise walls on both sides",
             )
             return
-        self._join(event, cloud, sign, z_m, core_low, core_high)
+        self._join(event, cloud, sign, found)
 
-    def _join(
-        self, event: Event, cloud: str, sign: int, z_m: float, low: float, high: float
-    ) -> None:
+    def _join(self, event: Event, cloud: str, sign: int, found: Located) -> None:
         """A cloud comes to a well; only begin and catch may find another cloud there."""
         tracing = self.tracing
         for well in tracing.living.wells:
-            if well.charge_sign != sign or not low - 1e-9 <= well.z_m <= high + 1e-9:
+            if well.charge_sign != sign or not found.low_m <= well.z_m <= found.high_m:
                 continue
             together = event.start_s == event.end_s or isinstance(event.effect, effects.Caught)
             if cloud in well.clouds:
@@ -102,14 +103,14 @@ class Arrivals:
                     Trouble.MERGE,
                     cloud,
                     event,
-                    z_m,
+                    found.z_m,
                     f"'{cloud}' is loaded into the well of '{well.clouds[0]}'",
                     "load it into a well of its own",
                 )
                 return
             well.clouds.append(cloud)
             return
-        tracing.living.wells.append(Well([cloud], sign, z_m, (low, high)))
+        tracing.living.wells.append(Well([cloud], sign, found.z_m, (found.low_m, found.high_m)))
 
     def _catch(self, event: Event, effect: effects.Caught, vector: Vector) -> None:
         living, cloud = self.tracing.living, effect.cloud
@@ -159,9 +160,8 @@ class Arrivals:
             )
             return
         deepest = min(wells, key=lambda found: sign * found.potential_V)
-        z_m, core = locate(tracing.field, sign, vector, deepest.z_m)
-        core_low, core_high = core if core is not None else (z_m, z_m)
-        tracing.living.wells.append(Well([cloud], sign, z_m, (core_low, core_high)))
+        core = deepest.z_m, deepest.z_m
+        tracing.living.wells.append(Well([cloud], sign, deepest.z_m, core))
 
     def _well_between(self, cloud: str, sign: int, near: str, far: str) -> Well | None:
         low, high = self._gate_span(near, far)
@@ -194,7 +194,7 @@ class Arrivals:
             return
         sign, z_m = let_out
         side = self._side(effect.through, z_m)
-        climb = climb_outward(self.tracing.field, sign, vector, z_m, side)
+        climb = climb_out(self.tracing.field, sign, vector, z_m, side)
         self._way(event, effect.cloud, climb)
 
     def _after_kick(self, effect: effects.Kicked, vector: Vector) -> None:
@@ -203,7 +203,9 @@ class Arrivals:
         if well is None:
             return
         well.paused = False
-        well.z_m = locate(self.tracing.field, well.charge_sign, vector, well.z_m)[0]
+        found = locate(self.tracing.field, well.charge_sign, vector, well.z_m)
+        if found is not None:
+            well.z_m = found.z_m
         living.drop(effect.light)
 
     def _lower(self, event: Event, effect: effects.Evaporated) -> None:
@@ -256,9 +258,9 @@ class Arrivals:
         (_, low), (high, _) = sorted(self.tracing.field.span_m(gate) for gate in (near, far))
         return low, high
 
-    def _side(self, through: tuple[str, ...], z_m: float) -> int:
+    def _side(self, through: tuple[str, ...], z_m: float) -> Side:
         low, high = self.tracing.field.span_m(through[0])
-        return 1 if (low + high) / 2 > z_m else -1
+        return "right" if (low + high) / 2 > z_m else "left"
 
     def _electrode_at(self, z_m: float) -> str:
         for name in self.tracing.field.electrodes:
@@ -266,3 +268,14 @@ class Arrivals:
             if low <= z_m <= high:
                 return f", under {name}"
         return ""
+
+
+def climb_out(field: Field, sign: int, vector: Vector, z_m: float, side: Side) -> float:
+    """How much a charge at rest at z (m) must climb to get out on a side, V; 0: it just leaves.
+
+    Outside the stack is the grounded tube, U = 0.
+    """
+    place_m, level_V, _ = extrema(field.curve(sign * vector))
+    ahead = place_m > z_m if side == "right" else place_m < z_m
+    here_V = sign * float(field.at(vector, z_m))
+    return max(0.0, float(np.max(np.append(level_V[ahead], 0.0))) - here_V)

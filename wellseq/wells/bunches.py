@@ -31,6 +31,8 @@ def guard(field: Field, patch_V: float, bunch: Bunch, segment: Segment, block: i
     bound = certify(
         field, bunch.charge_sign, segment.base, segment.moves, well, left, right, bottom=0.0
     )
+    assert bound.left is not None
+    assert bound.right is not None
     sides = [
         _side(field, patch_V, segment, side, region)
         for side, region in ((bound.left, left), (bound.right, right))

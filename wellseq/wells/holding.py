@@ -16,7 +16,7 @@ from fractions import Fraction
 import numpy as np
 import numpy.typing as npt
 
-from wellseq.fields.certificate import Certificate, SideBound, certify, oscillation
+from wellseq.fields.certificate import Region, SideBound, certify, oscillation
 from wellseq.fields.field import Field
 from wellseq.fields.following import Proven, prove
 from wellseq.timeline.motion import Segment
@@ -29,9 +29,10 @@ CUTS_MAX = 12
 LOOSE_SHARE = 0.02
 LOOSE_V = 1e-3
 """A part is cut once more while the chord's loss exceeds both of these (share of the depth, V)."""
-RIPPLE_SHARE = 0.05
+RIPPLE_SHARE = 0.1
 RIPPLE_V = 1e-3
-"""Ripple of a flat bottom that is merged and taken off: the greater of these."""
+"""Minima that a lesser barrier separates are one, and that much is taken off: the greater of these
+(share of the floor; V)."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -96,13 +97,23 @@ class Lost:
     part: Part
 
 
+@dataclass(frozen=True, slots=True)
+class Known:
+    """What was found for one motion: the proof, both sides' bounds, depth out to the ends (V)."""
+
+    proven: Proven
+    left: SideBound
+    right: SideBound
+    trap_V: float
+
+
 class Holding:
     """Proves and certifies; remembers what it has done, since sequences repeat themselves."""
 
     def __init__(self, field: Field, patch_V: float) -> None:
         self.field = field
         self.patch_V = patch_V
-        self._known: dict[bytes, tuple[Proven, Certificate, float] | None] = {}
+        self._known: dict[bytes, Known | None] = {}
 
     def hold(
         self, sign: int, z_m: float, segment: Segment, floor_V: float
@@ -111,7 +122,7 @@ class Holding:
         waiting = [(part_of(segment), 0)]
         while waiting:
             part, cuts = waiting.pop()
-            known = self._solve(sign, z_m, part)
+            known = self._solve(sign, z_m, part, max(RIPPLE_V, RIPPLE_SHARE * floor_V))
             halves = part.cut() if cuts < CUTS_MAX and self._loose(part, known, floor_V) else None
             if halves is not None:
                 waiting += [(halves[1], cuts + 1), (halves[0], cuts + 1)]
@@ -119,82 +130,79 @@ class Holding:
                 yield Lost(part.window_s, z_m, part)
                 return
             else:
-                hold = self._hold(part, *known)
+                hold = self._hold(part, z_m, known)
                 z_m = hold.to_m
                 yield hold
 
-    def _loose(
-        self, part: Part, known: tuple[Proven, Certificate, float] | None, floor_V: float
-    ) -> bool:
+    def _loose(self, part: Part, known: Known | None, floor_V: float) -> bool:
         if known is None:
             return True
         shape_V = part.segment.shape_V
         if not np.any(shape_V):
             return False
-        proven, bound, _ = known
-        weights = oscillation(self.field, proven.well, proven.left, proven.right)
-        depth = min(bound.left.lower_V, bound.right.lower_V)
+        proven = known.proven
+        weights = oscillation(self.field, proven.core, proven.left, proven.right)
+        depth = min(known.left.lower_V, known.right.lower_V)
         return float(shape_V @ weights) > max(LOOSE_V, LOOSE_SHARE * max(depth - floor_V, 0.0))
 
-    def _solve(self, sign: int, z_m: float, part: Part) -> tuple[Proven, Certificate, float] | None:
+    def _solve(self, sign: int, z_m: float, part: Part, ripple_V: float) -> Known | None:
         deviation = part.segment.deviation_V()
         key = b"".join(
             (
                 sign.to_bytes(1, "little", signed=True),
-                np.float64(z_m).tobytes(),
+                np.array([z_m, ripple_V]).tobytes(),
                 part.base.tobytes(),
                 part.moves.tobytes(),
                 deviation.tobytes(),
             )
         )
         if key not in self._known:
-            self._known[key] = self._prove(sign, z_m, part, deviation)
+            self._known[key] = self._prove(sign, z_m, part, deviation, ripple_V)
         return self._known[key]
 
     def _prove(
-        self, sign: int, z_m: float, part: Part, deviation: Vector
-    ) -> tuple[Proven, Certificate, float] | None:
+        self, sign: int, z_m: float, part: Part, deviation: Vector, ripple_V: float
+    ) -> Known | None:
         corners = part.corners()
         proven = prove(
-            self.field, sign, corners, z_m, deviation, ripple_V=RIPPLE_V, ripple_share=RIPPLE_SHARE
+            self.field, sign, corners[0], corners[-1], z_m, deviation, ripple_V, corners[1:-1]
         )
         if proven is None:
             return None
-        bound = certify(
-            self.field, sign, part.base, part.moves, proven.well, proven.left, proven.right
-        )
         last = len(self.field.z_m) - 1
-        outside = certify(
-            self.field,
-            sign,
-            part.base,
-            part.moves,
-            proven.well,
-            (0, proven.well[0]),
-            (proven.well[1], last),
-        )
-        return proven, bound, min(outside.left.lower_V, outside.right.lower_V)
+        sides = self._both(sign, part, proven.core, proven.left, proven.right)
+        outside = self._both(sign, part, proven.core, (0, proven.core[0]), (proven.core[1], last))
+        return Known(proven, *sides, min(side.lower_V for side in outside))
 
-    def _hold(self, part: Part, proven: Proven, bound: Certificate, trap_V: float) -> Hold:
-        z_m = self.field.z_m
-        left = self._side(part, proven, bound.left, proven.left)
-        right = self._side(part, proven, bound.right, proven.right)
-        taken = max(left.losses.total_V, right.losses.total_V)
+    def _both(
+        self, sign: int, part: Part, core: Region, left: Region, right: Region
+    ) -> tuple[SideBound, SideBound]:
+        bound = certify(self.field, sign, part.base, part.moves, core, left, right)
+        assert bound.left is not None
+        assert bound.right is not None
+        return bound.left, bound.right
+
+    def _hold(self, part: Part, from_m: float, known: Known) -> Hold:
+        z_m, proven = self.field.z_m, known.proven
+        left = self._side(part, proven, known.left, proven.left)
+        right = self._side(part, proven, known.right, proven.right)
+        taken_V = max(left.losses.total_V, right.losses.total_V)
+        well_m = float(z_m[proven.core[0]]), float(z_m[proven.core[1]])
         return Hold(
             part.window_s,
-            (float(z_m[proven.well[0]]), float(z_m[proven.well[1]])),
-            proven.z_start_m,
+            well_m,
+            from_m,
             proven.z_end_m,
             left,
             right,
-            trap_V - taken,
+            known.trap_V - taken_V,
         )
 
     def _side(
         self, part: Part, proven: Proven, bound: SideBound, region: tuple[int, int]
     ) -> SideDepth:
         segment = part.segment
-        weights = oscillation(self.field, proven.well, region, None)
+        weights = oscillation(self.field, proven.core, region, None)
         taken = losses(
             segment,
             weights,

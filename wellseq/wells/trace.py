@@ -10,7 +10,8 @@ from __future__ import annotations
 from itertools import combinations
 
 from wellseq.fields.field import Field
-from wellseq.timeline.motion import Carry, Segment, segments
+from wellseq.timeline.deviations import Carry
+from wellseq.timeline.motion import Segment, segments
 from wellseq.timeline.shipped import Shipped, ShippedBlock
 from wellseq.timeline.timeline import Event, Timeline
 from wellseq.wells.arrivals import Arrivals

@@ -38,7 +38,7 @@ def write(cleared: Cleared) -> Iterator[tuple[str, list[bytes]]]:
         _outputs(found, case.shipped),
         _stored(found),
         _waiting(case.shipped, found),
-        _end(found, case),
+        _end(found),
         _site(case.trap),
         _drives(case.shipped),
         _lines(case, case.trap),
@@ -155,16 +155,19 @@ def _waiting(shipped: Shipped, found: list[Hazard]) -> str:
     return f"## Waits for triggers\n\n{standing('waits')}\n\n{_table(head, rows)}"
 
 
-def _end(found: list[Hazard], case: Case) -> str:
-    live = [
-        one for one in found if one.ends_V[-1] > TOUCH_V or (one.flagged and one.ends_V[-1] > 0)
-    ]
-    if not live:
-        said = f"No output of the list above is left above {TOUCH_V:g} V."
-    else:
-        names = [f"{markdown(one.output)} at {amount(one.ends_V[-1], 'V')}" for one in live]
-        said = f"**Left live at the end: {'; '.join(names)}.**"
-    return f"## After the last row\n\n{standing('end-state')} {said}"
+def _end(found: list[Hazard]) -> str:
+    live = [one for one in found if one.ends_V[-1] > TOUCH_V]
+    quiet = [one for one in found if one.flagged and one not in live]
+    said = f"No output of the list above is left above {TOUCH_V:g} V."
+    if live:
+        said = f"**Left above {TOUCH_V:g} V: {_left(live)}.**"
+    if quiet:
+        said += f" Flagged hazardous and left below that: {_left(quiet)}."
+    return f"## After the last row\n\n{standing('end-state')}\n\n{said}"
+
+
+def _left(found: list[Hazard]) -> str:
+    return "; ".join(f"{markdown(one.output)} at {amount(one.ends_V[-1], 'V')}" for one in found)
 
 
 def _site(trap: Trap) -> str:
