@@ -11,7 +11,7 @@ codes are decoded here from the trap file alone, and at every instant of a block
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
 from fractions import Fraction
 from random import Random
 
@@ -32,27 +32,27 @@ def drawn_differences(played: Interpreter, timeline: drawn.Timeline, rng: Random
     if len(played.blocks) != len(timeline.blocks):
         return [f"{len(timeline.blocks)} blocks, {len(played.blocks)} wished"]
     found: list[str] = []
+    inputs = {name for name, line in played.trap.lines.items() if line.get("kind") == "input"}
     for wish, block in zip(played.blocks, timeline.blocks, strict=True):
-        found += [f"{block.name}: {text}" for text in _facts(wish, block)]
+        found += [f"{block.name}: {text}" for text in _facts(wish, block, inputs)]
         found += [f"{block.name}: {text}" for text in _volts(played, wish, block, rng)]
     return found
 
 
-def _facts(wish: Block, block: drawn.Block) -> Iterator[str]:
+def _facts(wish: Block, block: drawn.Block, inputs: set[str]) -> Iterator[str]:
     """Everything that is exact."""
+    got_lines = [(c.time_s, c.line, c.state, c.expected) for c in block.changes]
     pairs: dict[str, tuple[object, object]] = {
         "trigger": (wish.trigger, block.trigger),
         "wait": (wish.within, block.within_s),
         "first row": (wish.latency, block.first_row_s),
         "duration": (wish.duration, block.duration_s),
-        "states before": (wish.states, dict(block.states)),
+        "states before": (_without(wish.states, inputs), _without(block.states, inputs)),
         "levels before": (wish.levels, dict(block.levels)),
         "volts before": (_floats(wish.volts), dict(block.volts)),
         "steps": (sorted(wish.steps), sorted((s.start_s, s.end_s) for s in block.spans)),
-        "lines": (
-            sorted(wish.settings),
-            sorted((c.time_s, c.line, c.state, c.expected) for c in block.changes),
-        ),
+        "lines": (_changes(wish.states, wish.settings), _changes(wish.states, got_lines)),
+        "inputs": (_expected(wish.settings, inputs), _expected(got_lines, inputs)),
         "edges": (
             sorted(
                 (name, t.command, t.start, t.end, t.before, t.after)
@@ -69,6 +69,26 @@ def _facts(wish: Block, block: drawn.Block) -> Iterator[str]:
     for what, (wished, got) in pairs.items():
         if wished != got:
             yield f"{what}: {got}, wished {wished}"
+
+
+def _changes(states: dict[str, str], settings: list[tuple]) -> list[tuple[Fraction, str, str]]:
+    """When lines get another state than the one they have."""
+    states, found = dict(states), []
+    for time, line, state, _ in sorted(settings, key=lambda item: item[0]):
+        if states[line] != state:
+            found.append((time, line, state))
+        states[line] = state
+    return sorted(found)
+
+
+def _without(states: Mapping[str, str], inputs: set[str]) -> dict[str, str]:
+    """The lines that are ours; what an input does during a wait is nobody's to say."""
+    return {line: state for line, state in states.items() if line not in inputs}
+
+
+def _expected(settings: list[tuple], inputs: set[str]) -> list[tuple]:
+    """What is said of lines that are not ours to set."""
+    return sorted(item for item in settings if item[1] in inputs)
 
 
 def _floats(volts: dict[str, Fraction]) -> dict[str, float]:
@@ -172,10 +192,11 @@ def shipped_differences(played: Interpreter, shipped: ships.Shipped) -> list[str
             converter = played.trap.converters[output]
             moves = [m for m in wish.moves.get(output, ()) if m.before != m.after]
             codes = rows.codes[:, column]
-            start_V = float(wish.volts[output])
-            far = _too_far(played.trap, converter, moves, start_V, rows, codes)
+            spans = _spans(converter, moves, float(wish.volts[output]), rows, codes)
+            far = _too_far(float(played.trap.staircase), converter, moves, spans)
             found += [f"{name}: {output} {text}" for text in far]
-            found += [f"{name}: {output} {text}" for text in _unsound_strays(converter, moves, start_V, rows, codes)]
+            found += [f"{name}: {output} {text}" for text in _unreported(converter, spans, rows)]
+            found += [f"{name}: {output} {text}" for text in _off_clock(converter, rows, codes)]
         for column, output in enumerate(shipped.switches):
             switch = played.trap.switches[output]
             throws = [(t.command, t.after) for t in wish.throws.get(output, ())]
@@ -230,14 +251,10 @@ def _slope(move: Move) -> float:
     return slope * np.pi / 2 if move.smooth else slope
 
 
-def _deviations(
-    converter: Converter,
-    moves: list[Move],
-    start_V: float,
-    rows: ships.ShippedBlock,
-    codes: Array,
-) -> tuple[Array, Array, Array]:
-    """Starts and ends (s) of short spans, and the largest |shipped − wished| (V) in each.
+def _spans(
+    converter: Converter, moves: list[Move], start_V: float, rows: ships.ShippedBlock, codes: Array
+) -> tuple[Array, Array]:
+    """Middles (s) of short spans, and the largest |shipped − wished| (V) in each; equal shapes.
 
     A holding card keeps its code in a span and the wish is monotone in it, so its two ends tell
     all; a drawing card's spans are quartered, between which a half-cosine hardly bends.
@@ -253,62 +270,53 @@ def _deviations(
     wished = _wished(moves, start_V, times_s)
     if converter.line:
         off = np.abs(np.interp(times_s, row_s, _decoded(converter, codes)) - wished)
-        return times_s[:-1], times_s[1:], np.maximum(off[:-1], off[1:])
+        return (times_s[:-1] + times_s[1:]) / 2, np.maximum(off[:-1], off[1:])
     # A row's time and a corner's may differ in the last digit of a float.
     row = np.searchsorted(row_s, times_s + tick_s / 1000, side="right") - 1
     held = _decoded(converter, codes)[row]
     off = np.maximum(np.abs(held[:-1] - wished[:-1]), np.abs(held[:-1] - wished[1:]))
-    return times_s[:-1], times_s[1:], off
+    return (times_s[:-1] + times_s[1:]) / 2, off
 
 
 def _too_far(
-    trap: PlainTrap,
-    converter: Converter,
-    moves: list[Move],
-    start_V: float,
-    rows: ships.ShippedBlock,
-    codes: Array,
+    staircase_V: float, converter: Converter, moves: list[Move], spans: tuple[Array, Array]
 ) -> Iterator[str]:
     """Spans in which a converter strays further from its wish than rounding may take it."""
-    starts, ends, off = _deviations(converter, moves, start_V, rows, codes)
-    middle = (starts + ends) / 2
-    stairs, rounded = np.zeros(len(off)), np.zeros(len(off))
+    middle_s, off_V = spans
+    stairs, rounded = np.zeros(len(off_V)), np.zeros(len(off_V))
     for move in moves:
         before, after = _off(move.start, converter.clock), _off(move.end, converter.clock)
-        within = (middle > float(move.start - before)) & (middle < float(move.end + after))
+        within = (middle_s > float(move.start - before)) & (middle_s < float(move.end + after))
         if move.smooth or not converter.line:
-            stairs = np.where(within, float(trap.staircase), stairs)
+            stairs = np.where(within, staircase_V, stairs)
         if converter.line:
             rounded += np.where(within, _slope(move) * float(max(before, after)), 0.0)
     allowed = float(converter.code_V) / 2 + stairs + rounded + VOLTS
-    for number in np.flatnonzero(off > allowed)[:3]:
-        yield (
-            f"from {starts[number]} to {ends[number]} s: {off[number]} V off, "
-            f"{allowed[number]} V allowed"
-        )
-    if not converter.line:
-        changed = rows.ticks[1:][np.diff(codes) != 0]
-        clock = int(converter.clock / rows.tick_s)
-        if (changed % clock).any():
-            yield "changes between two edges of its clock"
+    for number in np.flatnonzero(off_V > allowed)[:3]:
+        yield f"at {middle_s[number]} s: {off_V[number]} V off, {allowed[number]} V allowed"
 
 
-def _unsound_strays(
-    converter: Converter,
-    moves: list[Move],
-    start_V: float,
-    rows: ships.ShippedBlock,
-    codes: Array,
+def _unreported(
+    converter: Converter, spans: tuple[Array, Array], rows: ships.ShippedBlock
 ) -> Iterator[str]:
-    """What the compiler says of its own deviation must bound it."""
-    starts, ends, off = _deviations(converter, moves, start_V, rows, codes)
-    half = float(converter.code_V) / 2 + VOLTS
+    """What the compiler says of its own deviations must bound them everywhere."""
+    middle_s, off_V = spans
+    reported = np.zeros(len(off_V))
     for stray in rows.strays:
         if stray.output == converter.name:
-            inside = (starts >= float(stray.start_s)) & (ends <= float(stray.end_s))
-            worst = off[inside].max(initial=0.0)
-            if worst > stray.volts + half:
-                yield f"strays {worst} V where {stray.volts} V are reported"
+            start, end = stray.start_s - stray.early_s, stray.end_s + stray.late_s
+            within = (middle_s > float(start)) & (middle_s < float(end))
+            reported = np.where(within, np.maximum(reported, stray.volts), reported)
+    over = off_V - reported - float(converter.code_V) / 2 - VOLTS
+    for number in np.flatnonzero(over > 0)[:3]:
+        yield f"at {middle_s[number]} s: {off_V[number]} V off, {reported[number]} V reported"
+
+
+def _off_clock(converter: Converter, rows: ships.ShippedBlock, codes: Array) -> Iterator[str]:
+    """A holding card changes at edges of its clock only."""
+    changed = rows.ticks[1:][np.diff(codes) != 0]
+    if not converter.line and (changed % int(converter.clock / rows.tick_s)).any():
+        yield "changes between two edges of its clock"
 
 
 def _late(

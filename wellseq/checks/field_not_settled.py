@@ -16,7 +16,7 @@ WAIVABLE = False
 
 LIMIT = at_most(1e-3, "V")
 """House default: share of the field's error in one depth."""
-BASIS_LIMIT = at_most(1e-6, "V per V")
+BASIS_LIMIT = at_most(1e-6, "V/V")
 """House default: error of one electrode's unit potential, V per volt applied."""
 
 

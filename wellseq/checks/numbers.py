@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 
 _STEPS = ((1e9, "G"), (1e6, "M"), (1e3, "k"), (1.0, ""), (1e-3, "m"), (1e-6, "u"), (1e-9, "n"))
-_PREFIXED = frozenset({"V", "s", "m", "Hz", "V/s", "eV", "K", "T", "J"})
+_PREFIXED = frozenset({"V", "s", "m", "Hz", "V/s", "eV", "K", "T", "J", "V/V"})
 
 
 def amount(value: float, unit: str) -> str:
@@ -25,4 +25,4 @@ def amount(value: float, unit: str) -> str:
 
 def _figures(value: float) -> str:
     text = f"{value:.4g}"
-    return f"{value:.0f}" if "e" in text and abs(value) < 1e9 else text
+    return f"{value:.0f}" if "e" in text and 1 <= abs(value) < 1e9 else text

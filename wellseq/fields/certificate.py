@@ -166,7 +166,7 @@ def certify(
 
     `base` (ne,) and `moves` (n, ne) in V; regions are inclusive node indices; `bottom` (V of U =
     sign·φ) replaces the bottom of the well.  Voltages that are not finite give bounds that are not
-    numbers. Raises ValueError for a region that is none.  Source: the head of this file.
+    numbers.  Raises ValueError for a region that is none.  Source: the head of this file.
     """
     moves = np.asarray(moves, dtype=float).reshape(-1, base.size)
     kept = np.flatnonzero(np.any(moves != 0.0, axis=1))

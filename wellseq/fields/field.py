@@ -177,9 +177,9 @@ class Field:
         return uniform.interpolation_error(self._stack, self._axis, order)
 
     def nodes_within(self, region_m: tuple[float, float]) -> Region:
-        """The inclusive node indices inside a span (m); the nearest node when none is inside.
+        """The inclusive node indices inside a span (m).
 
-        Raises ValueError for a span that is empty or leaves the axis.
+        Raises ValueError for a span that holds no node or leaves the axis.
         """
         low, high = region_m
         if not (low <= high and low >= self.z_m[0] and high <= self.z_m[-1]):
@@ -190,7 +190,9 @@ class Field:
         first = int(np.searchsorted(self.z_m, low, side="left"))
         last = int(np.searchsorted(self.z_m, high, side="right")) - 1
         if first > last:
-            first = last = int(np.abs(self.z_m - (low + high) / 2).argmin())
+            raise ValueError(
+                f"({low:g}, {high:g}) m is narrower than the nodes, {self.step_m:g} m apart"
+            )
         return first, last
 
     def potential(
@@ -198,9 +200,11 @@ class Field:
     ) -> FloatArray:
         """Potential in V (shape of z) at z and radius r in m; electrodes not named are at 0 V.
 
-        Raises ValueError for an unknown electrode or a radius beyond 0.9 of the bore's.
+        Raises ValueError for an unknown electrode, a radius beyond 0.9 of the bore's, or no place.
         """
         vector = self.vector(voltages)
+        if np.isnan(z_m).any():
+            raise ValueError("a place along the axis is not a number")
         if r_m == 0.0:
             return self.curve(vector).exact(z_m)
         nodes, axis = uniform.potential_nodes(self._stack, vector, r_m)
@@ -213,8 +217,7 @@ class Field:
         charge_sign: float,
         between_m: tuple[float, float] | None = None,
     ) -> list[Well]:
-        """All wells on the axis for charges of this sign, from left to right, inside `between_m`
-        (m).
+        """All wells on the axis for charges of this sign, left to right, inside `between_m` (m).
 
         Raises ValueError for an unknown electrode or a sign other than +1 or −1.
         """

@@ -10,7 +10,7 @@ interpolation can do: *rising outward*, *concave*, *convex*.
  Own region on a side: outward from the core through intervals that rise or are concave.  After a
  concave stretch a rising one proves that nothing fell before it, so only the last stretch can hold
  a top, and no minimum is passed.  Flat shoulders are passed when U is nowhere lower than the ripple
- below the highest point so far (also convex in p).  What is not proved is left out: that costs
+ below the highest point so far (also convex in p).  What is not proved is left out, which costs
  depth.
 
 Shapes: start, end, deviation (ne,); regions are inclusive node indices.  Units: V, m.
@@ -77,8 +77,7 @@ def locate(
 ) -> Located | None:
     """The minimum of U = sign · φ that a charge slides down to from z (m) at voltages (ne,) in V.
 
-    Dimples below `ripple_V` are no hindrance; None when it slides out of an end or nothing holds
-    it.
+    Dimples below `ripple_V` are no hindrance.  None when it slides out of an end.
     """
     return _slide(field.curve(sign * vector), z_m, ripple_V)
 

@@ -1,12 +1,11 @@
-"""A wished-for path of the own depth on one side → voltages of the electrodes that move, or why
-none.
+"""A wished-for path of the own depth on one side → voltages of the moving electrodes, or why none.
 
 The electrodes named move together by the same shift x (V).  D(x), the own vacuum depth towards
 them, is followed along the branch that begins at x = 0, in the direction in which it falls; it is
 convex as long as one pair of regions serves, so Newton's rule comes from one side and never
-overshoots. Breakpoints are joined by straight lines in time.  Between two of them D lies below its
-chord, and the certificate bounds how far: a breakpoint is added until D follows the wish within 1
-mV or 1 % (the larger) at every instant, proved and not sampled.
+overshoots.  Breakpoints are joined by straight lines in time.  Between two of them D lies below its
+chord, and the certificate bounds how far: a breakpoint is added until D follows the wish within
+1 mV or 1 % (the larger) at every instant, proved and not sampled.
 
 Shapes: vector (ne,), moving (k,).  Units: V, m, fractions of the duration.
 Accuracy: tests/fields/test_inverse.py.  Source: certificate.py, following.py.
@@ -48,10 +47,10 @@ _TRIALS_MAX = 100
 
 @dataclass(frozen=True, slots=True)
 class Path:
-    """Straight pieces: at `fractions` (n,) of the duration the moving electrodes stand at `volts`
-    (n, k).
+    """Straight pieces of the moving electrodes' voltages.
 
-    `depths_V` (n,) is the own depth there; `worst_error_V` bounds |depth − wish| over all instants.
+    At `fractions` (n,) of the duration they stand at `volts` (n, k), with the own depth `depths_V`
+    (n,); `worst_error_V` bounds |depth − wish| over all instants.
     """
 
     fractions: FloatArray

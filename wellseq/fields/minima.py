@@ -1,13 +1,11 @@
-"""The potential along the axis → its wells: every local minimum of U = sign · φ, and how deep it
-is.
+"""The potential along the axis → its wells: every local minimum of U = sign · φ and its depths.
 
 Extrema are the zeros of U′: intervals where the Bernstein controls of U′ differ in sign are
 searched at sixteen points each, so two zeros between neighbouring nodes are found as well; each is
 polished by Newton's rule.  Minima are merged across a barrier lower than the *ripple* (flat bottoms
 have dimples of no meaning): always the lowest barrier first, the shallower minimum is dropped.
-Outside is the
-grounded tube at 0 V, a neighbour like any other.  *Own* depth reaches to the nearest remaining
-neighbour, *trap* depth out to the ends and the outside.
+Outside is the grounded tube at 0 V, a neighbour like any other.  *Own* depth reaches to the nearest
+remaining neighbour, *trap* depth out to the ends and the outside.
 
 Units: m, V; depths in V per elementary charge; curvature V/m².
 Accuracy: tests/fields/test_minima.py.  Source of the merging: H. Edelsbrunner, J. Harer,
@@ -31,9 +29,8 @@ class Well:
     """A local minimum of U = sign · φ on the axis.
 
     `depth_V` is the own depth on the lower side, `depth_left_V` and `depth_right_V` on each (to the
-    nearest neighbouring minimum); `trap_depth_V` reaches out to the ends, lower side.
-    `curvature_V_m2`
-    is U″ ≥ 0, `potential_V` is φ (not U) at the minimum.
+    nearest neighbouring minimum); `trap_depth_V` reaches out to the ends, lower side;
+    `curvature_V_m2` is U″ ≥ 0, `potential_V` is φ (not U) at the minimum.
     """
 
     z_m: float

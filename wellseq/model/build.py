@@ -22,6 +22,7 @@ from wellseq.model.plan import STEPS_MAX, Body, Pick, Planner, TooLarge
 from wellseq.model.reporter import Reporter
 from wellseq.model.scope import SORTS, FileScope, Names
 from wellseq.model.sequence import CloudDeclared, Sequence, SourceFile
+from wellseq.model.size import LeastSize
 from wellseq.model.steps import verbs
 from wellseq.model.trap import Trap
 from wellseq.model.trap_file import read_trap
@@ -168,18 +169,23 @@ class _Build:
         if header.sequence is None or not isinstance(block, Block):
             return None
         self.planner.complete = not len(self.reporter)
+        size = LeastSize(single=self.planner.pick is not None).of(block, scope)
+        if size > STEPS_MAX:
+            self._too_large(header.sequence, f"at least {_number(size)}")
+            return None
         try:
             body = self.planner.body(block, Names(scope))
         except TooLarge:
             return None
         self._look_at_the_pick()
-        if body.size <= STEPS_MAX:
-            return body
-        count = f"{body.size:,}" if body.size < 10**9 else "more than 1,000,000,000"
+        if body.size > STEPS_MAX:
+            self._too_large(header.sequence, _number(body.size))
+            return None
+        return body
+
+    def _too_large(self, sequence: Statement, count: str) -> None:
         message = f"this sequence plays {count} steps, and at most {STEPS_MAX:,} can be played"
-        place = header.sequence.operands[0].place
-        self.reporter.add(Mistake("too-large", place, message))
-        return None
+        self.reporter.add(Mistake("too-large", sequence.operands[0].place, message))
 
     def _look_at_the_pick(self) -> None:
         """One value of an `each` can be asked for only where there is one."""
@@ -210,7 +216,9 @@ class _Build:
     def _unused(self, scope: FileScope) -> None:
         used = names_in(self.tree.statements)
         for item in scope.own("let", "pattern", "procedure", "cloud"):
-            if item.place is not None and item.name not in used:
+            if item.place is None or item.name in used:
+                continue
+            if not self.reporter.suggests(item.name):  # else it is used, and misspelt there
                 message = f"nothing uses {SORTS[item.sort].split()[1]} '{printable(item.name)}'"
                 self.reporter.add(Mistake("name-unused", item.place, message, "leave it out"))
 
@@ -225,6 +233,10 @@ class _Build:
 def _name(sequence: Statement) -> str:
     subject = sequence.operands[0]
     return subject.text if isinstance(subject, Name) else ""
+
+
+def _number(count: int) -> str:
+    return f"{count:,}" if count < 10**12 else "10^12 or more"
 
 
 def _clouds(scope: FileScope) -> dict[str, CloudDeclared]:

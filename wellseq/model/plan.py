@@ -302,7 +302,7 @@ class Planner:
         body = self._called(procedure, inside, operand.place, depth, in_lane)
         if body is None:
             return None
-        if depth + body.depth > DEPTH_MAX:
+        if depth + body.depth - 1 > DEPTH_MAX:
             self._too_deep(item.place, names)
         return CallNode(body, item.place, _label(item))
 

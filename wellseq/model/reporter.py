@@ -36,6 +36,11 @@ class Reporter:
         self._comparisons += len(known)
         return nearest(name, known, what) if self._comparisons <= COMPARISONS_MAX else ""
 
+    def suggests(self, name: str) -> bool:
+        """Whether a mistake may be a misspelling of this name."""
+        hint = nearest(name, (name,))
+        return any(mistake.hint == hint for mistake in self._found.values())
+
     def listed(self, files: Sequence[str]) -> tuple[Mistake, ...]:
         """Mistakes in the order of these files (others after them) and of their places.
 

@@ -18,7 +18,7 @@ import numpy.typing as npt
 
 from wellseq.model.trap import Converter, Switch, Trap
 from wellseq.timeline.shipped import ShippedBlock
-from wellseq.timeline.timeline import Block, Piece, Shape
+from wellseq.timeline.timeline import Piece, Shape
 
 Vector = npt.NDArray[np.float64]
 NOISE_RMS_TAKEN = 6.0
@@ -75,7 +75,7 @@ class Deviations:
         self.converters = [output for output in trap.outputs if isinstance(output, Converter)]
         self.quiet = {output.name: quiet(output) for output in trap.outputs}
         self._strays = {(s.output, s.start_s): s.volts for s in shipped.strays}
-        self._reach = _Reach(trap, shipped.block)
+        self._reach = _Reach(trap, shipped)
         self._stray_before: dict[str, float] = {}
 
     def on(
@@ -143,15 +143,21 @@ class Deviations:
 class _Reach:
     """Where a piece's rounded rows and delayed edges reach beyond its written span."""
 
-    def __init__(self, trap: Trap, block: Block) -> None:
+    def __init__(self, trap: Trap, shipped: ShippedBlock) -> None:
         self._windows: dict[str, list[tuple[Fraction, Fraction, float, Piece]]] = {}
         self._first: dict[str, int] = {}
-        for piece in block.pieces:
+        rows = {(stray.output, stray.start_s): stray for stray in shipped.strays}
+        for piece in shipped.block.pieces:
             output = trap.output(piece.output)
             assert isinstance(output, Converter)
-            early, late = output.clock_s / 2, output.clock_s / 2 + output.delay_s
-            volts = min(piece.slope_max_V_per_s * float(late), abs(piece.to_V - piece.from_V))
-            window = (piece.start_s - early, piece.end_s + late, volts, piece)
+            stray = rows.get((piece.output, piece.start_s))
+            early_s = stray.early_s if stray is not None else Fraction(0)
+            late_s = output.delay_s + (stray.late_s if stray is not None else Fraction(0))
+            volts = min(
+                piece.slope_max_V_per_s * float(max(early_s, late_s)),
+                abs(piece.to_V - piece.from_V),
+            )
+            window = (piece.start_s - early_s, piece.end_s + late_s, volts, piece)
             self._windows.setdefault(piece.output, []).append(window)
 
     def stray_V(

@@ -110,7 +110,7 @@ class _Loading:
     def _jump(self, piece: Piece) -> None:
         tick = self._round(piece, piece.start_s)
         self.tracks[piece.output].add(np.array([tick]), np.array([piece.to_V]))
-        self._stray(piece, 0.0, 1)
+        self._stray(piece, 0.0, 1, tick, tick)
 
     def _staircase(self, pieces: list[Piece]) -> None:
         first = pieces[0]
@@ -130,7 +130,8 @@ class _Loading:
             volts[-1] = piece.to_V
             self.tracks[piece.output].add(ticks, volts)
             late_s = abs(float(ticks[worst] - asked[worst] * per_clock) * float(self.tick_s))
-            self._stray(piece, abs(swing) / (2 * steps) + piece.slope_max_V_per_s * late_s, steps)
+            stray_V = abs(swing) / (2 * steps) + piece.slope_max_V_per_s * late_s
+            self._stray(piece, stray_V, steps, int(ticks[0]), int(ticks[-1]))
             emitted = int(ticks[worst]) * self.tick_s
             exact = Fraction(float(asked[worst])) * clock
             self.roundings.append(Rounding(piece.number, piece.output, exact, emitted))
@@ -168,7 +169,7 @@ class _Loading:
         volts = piece.from_V + (piece.to_V - piece.from_V) * curve
         volts[-1] = piece.to_V
         track.add(ticks, volts)
-        self._stray(piece, self._corner_stray(piece, ticks), chords + 1)
+        self._stray(piece, self._corner_stray(piece, ticks), chords + 1, start, end)
 
     def _corner_stray(self, piece: Piece, ticks: Integers) -> float:
         tick = float(self.tick_s)
@@ -189,9 +190,18 @@ class _Loading:
         self.roundings.append(Rounding(piece.number, piece.output, time_s, emitted))
         return int(emitted / self.tick_s)
 
-    def _stray(self, piece: Piece, volts: float, rows: int) -> None:
+    def _stray(self, piece: Piece, volts: float, rows: int, first: int, last: int) -> None:
         self.strays.append(
-            Stray(piece.number, piece.output, piece.start_s, piece.end_s, volts, rows)
+            Stray(
+                piece.number,
+                piece.output,
+                piece.start_s,
+                piece.end_s,
+                volts,
+                rows,
+                max(piece.start_s - first * self.tick_s, Fraction(0)),
+                max(last * self.tick_s - piece.end_s, Fraction(0)),
+            )
         )
 
     def _converter(self, name: str) -> Converter:

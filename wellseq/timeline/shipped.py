@@ -34,7 +34,8 @@ class Stray:
     """How far an output's codes stray from the wish of one piece, and by what.
 
     `volts` bounds |shipped − wished| in V at every instant of the piece, half a code not counted;
-    `rows` is how many rows the piece has.
+    `rows` is how many rows the piece has.  Rounded rows may reach beyond the piece by `early_s`
+    before its start and `late_s` after its end (s).
     """
 
     number: int
@@ -43,6 +44,8 @@ class Stray:
     end_s: Fraction
     volts: float
     rows: int
+    early_s: Fraction = Fraction(0)
+    late_s: Fraction = Fraction(0)
 
 
 @dataclass(frozen=True, slots=True)
