@@ -3,7 +3,7 @@
 import math
 
 import numpy as np
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from wellseq.base.finding import Limit, Reading, Verdict, at_least, at_most
@@ -13,6 +13,7 @@ values = st.floats(-10, 10) | st.sampled_from([math.nan, math.inf, -math.inf])
 rows = st.lists(st.tuples(values, values, st.integers(0, 2), st.integers(0, 2)), max_size=30)
 
 
+@settings(deadline=None)
 @given(rows=rows, bounds=st.lists(values, min_size=30, max_size=30), side=st.booleans())
 def test_telling_judges_as_the_judge_does(rows, bounds, side):
     side = "at least" if side else "at most"
@@ -71,6 +72,7 @@ def test_numbered_counts_as_they_come():
     assert numbered(["b", "a", "b", ("a", 1)]) == [0, 1, 0, 2]
 
 
+@settings(deadline=None)
 @given(st.floats(1e-150, 1e150), st.sampled_from([1.0, -1.0]))
 def test_figures_move_a_value_by_less_than_half_a_unit_of_the_twelfth(value, sign):
     rounded = float(figures(sign * value))

@@ -2,7 +2,7 @@
 
 from fractions import Fraction
 
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from wellseq.checks.judging import check
@@ -38,6 +38,7 @@ def test_nothing_that_moves_is_clean(make):
     assert make.verdicts(make.case(), NAME) == []
 
 
+@settings(deadline=None, max_examples=40)
 @given(
     duration=st.fractions(Fraction(1, 100), 100, max_denominator=1000),
     constant=st.fractions(0, 10, max_denominator=1000),

@@ -5,7 +5,7 @@ from fractions import Fraction
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from wellseq.checks.judging import check
@@ -136,6 +136,7 @@ def test_one_electrode_has_no_neighbour_and_it_may_not_be_allowed(make):
     assert not check(NAME).WAIVABLE
 
 
+@settings(deadline=None, max_examples=40)
 @given(
     start=st.lists(st.floats(-100, 100), min_size=2, max_size=2),
     end=st.lists(st.floats(-100, 100), min_size=2, max_size=2),

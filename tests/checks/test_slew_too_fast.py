@@ -4,7 +4,7 @@ import math
 from fractions import Fraction
 
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from wellseq.checks.judging import check
@@ -98,6 +98,7 @@ def test_it_may_not_be_allowed(make):
     assert not check(NAME).WAIVABLE
 
 
+@settings(deadline=None, max_examples=40)
 @given(
     volts=st.floats(-90, 90),
     duration_us=st.fractions(1, 50, max_denominator=20),
@@ -115,6 +116,7 @@ def test_more_time_never_makes_the_wish_steeper(
     assert (short, long) != (["pass"], ["fail"])
 
 
+@settings(deadline=None, max_examples=40)
 @given(volts=st.floats(-90, 90), microseconds=st.integers(1, 30))
 def test_whole_clocks_at_the_slew_are_played_within_it(make, volts, microseconds):
     played = case(make, volts, microseconds, slew=max(1.0, abs(volts) / microseconds * 1e6))

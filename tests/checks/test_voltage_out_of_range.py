@@ -3,7 +3,7 @@
 import math
 
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from wellseq.checks.judging import check
@@ -56,6 +56,7 @@ def test_it_may_not_be_allowed(make):
     assert not check(NAME).WAIVABLE
 
 
+@settings(deadline=None, max_examples=40)
 @given(volts=st.floats(-1e4, 1e4))
 def test_it_fails_just_where_the_converter_cannot_go(make, volts):
     assert ("fail" in verdicts(make, volts)) == (abs(volts) > 100.0)

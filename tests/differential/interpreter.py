@@ -1,8 +1,7 @@
 """A plain, slow interpreter of sequences: what every output shall do, in exact block time.
 
-It shares the tree and places with the package and nothing else, so that a misreading of the language
-would have to be made twice to stay unseen.  Times are Fractions of seconds from the block's first
-row; volts are Fractions, and floats only on a half-cosine.
+It shares the tree and places with the package and nothing else, so that a misreading of the
+language would have to be made twice to stay unseen.
 
 The meaning beyond what the language's manual says:
 - a throw lasts until delay + 1.25 × its 10–90 % edge are over, then up to the next multiple of the

@@ -9,11 +9,21 @@ import re
 import tomllib
 from dataclasses import dataclass
 from fractions import Fraction
+from functools import cached_property
 from math import gcd, lcm
 from pathlib import Path
 
 _PREFIX = {"": 0, "k": 3, "M": 6, "G": 9, "m": -3, "u": -6, "n": -9, "p": -12, "c": -2}
-_WORDS = {"V": "kmu", "s": "mun", "m": "mcu", "Hz": "kMG", "K": "m", "eV": "mk", "T": "m", "F": "pn"}
+_WORDS = {
+    "V": "kmu",
+    "s": "mun",
+    "m": "mcu",
+    "Hz": "kMG",
+    "K": "m",
+    "eV": "mk",
+    "T": "m",
+    "F": "pn",
+}
 POWERS: dict[str, tuple[Fraction, dict[str, int]]] = {
     prefix + word: (Fraction(10) ** _PREFIX[prefix], {word: 1})
     for word, prefixes in _WORDS.items()
@@ -90,10 +100,15 @@ class Converter:
         nominal = self.low + code * (self.high - self.low) / (2**self.bits - 1)
         return self.gain * nominal + self.offset
 
-    @property
+    @cached_property
+    def zero_V(self) -> Fraction:
+        """Electrode volts for code 0."""
+        return self.electrode_V(Fraction(0))
+
+    @cached_property
     def code_V(self) -> Fraction:
         """Electrode volts from one code to the next."""
-        return self.electrode_V(Fraction(1)) - self.electrode_V(Fraction(0))
+        return self.electrode_V(Fraction(1)) - self.zero_V
 
 
 @dataclass(frozen=True)
@@ -126,13 +141,13 @@ class PlainTrap:
         """The clocks of all outputs, s."""
         return [out.clock for out in (*self.converters.values(), *self.switches.values())]
 
-    @property
+    @cached_property
     def beat(self) -> Fraction:
         """The least common multiple of the clocks of all outputs, s."""
         common = lcm(*(clock.denominator for clock in self.clocks))
         return Fraction(lcm(*(int(clock * common) for clock in self.clocks)), common)
 
-    @property
+    @cached_property
     def tick(self) -> Fraction:
         """The greatest common divisor of all clocks, those of lines too, s."""
         clocks = [*self.clocks, *(read(line["clock"]) for line in self.lines.values())]
@@ -142,10 +157,6 @@ class PlainTrap:
     def line_clock(self, line: str) -> Fraction:
         """The clock of a digital line, s."""
         return read(self.lines[line]["clock"])
-
-    def shares(self, output: str) -> list[str]:
-        """The electrodes on an output."""
-        return [name for name, used in self.electrodes.items() if used == output]
 
 
 def load(path: Path) -> PlainTrap:

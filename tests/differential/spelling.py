@@ -1,4 +1,4 @@
-"""Exact values → the many ways in which a sequence file may write them, chosen by a seeded source."""
+"""Exact values → the many ways in which a file may write them, chosen by a seeded source."""
 
 from __future__ import annotations
 
@@ -98,7 +98,9 @@ class Speller:
         return self._with_let(value, unit)
 
     def _size(self, unit: str) -> Fraction:
-        return {"V": Fraction(1), "s": Fraction(1, 1000), "Hz": Fraction(10**5)}.get(unit, Fraction(1))
+        return {"V": Fraction(1), "s": Fraction(1, 1000), "Hz": Fraction(10**5)}.get(
+            unit, Fraction(1)
+        )
 
     def _with_let(self, value: Fraction, unit: str) -> str:
         known = self.lets.get(unit)

@@ -140,67 +140,12 @@ def test_the_same_text_gives_the_same_sequence(bench):
     assert first.sequence.items == second.sequence.items
 
 
-WORDS = st.sampled_from(
-    [
-        *[
-            "hold",
-            "ramp",
-            "cool",
-            "catch",
-            "each",
-            "repeat",
-            "do",
-            "alongside",
-            "lane",
-            "for",
-            "over",
-            "to",
-            "of",
-            "with",
-            "between",
-            "and",
-        ],
-        *[
-            "at",
-            "allow",
-            "because",
-            "bunch",
-            "cradle",
-            "E1",
-            "E2..E5",
-            "wall",
-            "5",
-            "3",
-            "s",
-            "2",
-            "V",
-            "±",
-            "%",
-            "(",
-            ")",
-            "{",
-            "}",
-            "=",
-            ",",
-            ";",
-            "-",
-            "is",
-        ],
-        *[
-            "smoothly",
-            "others",
-            "keep",
-            '"x"',
-            "let",
-            "cloud",
-            "pattern",
-            "procedure",
-            "use",
-            "trap",
-        ],
-        "\n",
-    ]
-)
+VOCABULARY = """
+hold ramp cool catch each repeat do alongside lane for over to of with between and at allow because
+bunch cradle E1 E2..E5 wall 5 3 s 2 V ± % ( ) { } = , ; - is smoothly others keep "x" let cloud
+pattern procedure use trap
+"""
+WORDS = st.sampled_from(["\n", *VOCABULARY.split()])
 
 
 @settings(suppress_health_check=[HealthCheck.function_scoped_fixture], max_examples=150)

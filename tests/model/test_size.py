@@ -49,7 +49,7 @@ def test_a_picked_value_is_one_pass():
 
 
 def test_a_procedure_that_calls_itself_comes_to_an_end():
-    assert least("do on()", "procedure on() { do on(); hold for 1 s }") == 2
+    assert least("do again()", "procedure again() { do again(); hold for 1 s }") == 2
 
 
 def test_calls_that_double_are_counted_at_once():

@@ -1,10 +1,10 @@
 """Pages of the manual → sequence files that can be compiled, each in a folder of its own.
 
 A page has sections under `## ` headings; in them stand examples, fenced as ```well.  An example
-that begins with `wellseq 1` is a whole file.  Any other is a piece of a sequence on the page trap; it
-gets the clouds that it names, the first of them standing at R6 where the example does not say how it
-comes.  A ```toml fence before it is added to the trap file, a ```python fence after it changes the
-compiled `case`, for what no sequence can bring about.
+that begins with `wellseq 1` is a whole file.  Any other is a piece of a sequence on the page trap;
+it gets the clouds that it names, the first of them standing at R6 where the example does not say
+how it comes.  A ```toml fence before it is added to the trap file, a ```python fence after it
+changes the compiled `case`, for what no sequence can bring about.
 """
 
 from __future__ import annotations

@@ -1,7 +1,7 @@
-"""Segments: the wish at every instant lies within base + Σ p moves ± shape, and the lag is bounded."""
+"""Segments: the wish lies within base + Σ p moves ± shape at every instant; lag is bounded."""
 
 from fractions import Fraction as F
-from itertools import product
+from itertools import pairwise, product
 
 import numpy as np
 import pytest
@@ -36,7 +36,7 @@ def test_segments_cover_the_block_without_a_hole():
     timeline, found = cut(body)
     assert found[0].start_s == 0
     assert found[-1].end_s == timeline.blocks[0].duration_s
-    assert all(one.end_s == two.start_s for one, two in zip(found, found[1:], strict=False))
+    assert all(one.end_s == two.start_s for one, two in pairwise(found))
 
 
 def test_straight_ramps_that_overlap_share_time_as_progress():
@@ -68,8 +68,16 @@ def test_switches_thrown_together_are_independent():
     at = columns(timeline)
     assert swinging[0].end()[at["G1"]] == -3000
     assert swinging[0].end()[at["G2"]] == -3000
-    # the window holds delay, whole edge, and half a clock of rounding on both sides
-    assert (swinging[0].start_s, swinging[0].end_s) == (F(25, 10**9), F(135, 10**9))
+    # delay 30 ns, whole edge 100 ns
+    assert (swinging[0].start_s, swinging[0].end_s) == (F(30, 10**9), F(130, 10**9))
+
+
+def test_an_edge_that_was_rounded_widens_its_window_by_that_much():
+    _, found = cut("hold for 4 us / 3\nthrow G1 to -3 kV\nhold for 1 s")
+    swinging = next(segment for segment in found if len(segment.moves) == 1)
+    asked, emitted = F(4, 3 * 10**6), F(1330, 10**9)
+    assert swinging.start_s == emitted + F(30, 10**9)
+    assert swinging.end_s == asked + F(130, 10**9)
 
 
 def test_an_edge_over_a_moving_converter_counts_its_drift():
@@ -134,7 +142,7 @@ def _progresses(segment, wish, share):
 
 
 def lag(swing, tau, duration, wait, smooth):
-    """|electrode − wish| by stepping the low-pass finely; its maximum in the ramp and after wait."""
+    """|electrode − wish| by stepping the low-pass finely; its maximum in the ramp, and after."""
     steps = 20000
     dt = (duration + wait) / steps
     from wellseq.timeline.timeline import Shape

@@ -31,10 +31,16 @@ class Examined:
     def cause(self) -> str:
         """Why this was not examined wholly; empty when it was."""
         if self.not_run:
-            name, why = self.not_run[0]
-            more = f" and {len(self.not_run) - 1} more" if len(self.not_run) > 1 else ""
-            return f"{name}{more}: {why}"
+            why = "; ".join(self.by_cause())
+            return f"{len(self.not_run)} checks did not run: {why}"
         return "" if self.ran else "no check ran"
+
+    def by_cause(self) -> dict[str, tuple[str, ...]]:
+        """Why checks did not run → their names."""
+        causes = dict.fromkeys(why for _, why in self.not_run)
+        return {
+            cause: tuple(name for name, why in self.not_run if why == cause) for cause in causes
+        }
 
     @property
     def clear(self) -> bool:

@@ -97,7 +97,8 @@ def _course(
         else np.full(len(levels), abs(level))
         for level in output.levels
     ]
-    return np.choose(levels, volts)
+    chosen: Floats = np.choose(levels, volts)
+    return chosen
 
 
 def _windows(shipped: Shipped, courses: list[Floats], holds: bool) -> Windows:

@@ -1,7 +1,7 @@
 """A trap as text: the stack drawn along the axis, then tables of what every part can do.
 
-Lengths in the drawing follow the electrodes' lengths as far as names and page allow; the numbers are
-in the table below it.
+Lengths in the drawing follow the electrodes' lengths as far as names and page allow; the numbers
+are in the table below it.
 """
 
 from __future__ import annotations
@@ -37,8 +37,8 @@ def _heading(trap: Trap) -> str:
     strengths = sorted({field_T for _, field_T in along})
     field = " to ".join(amount(one, "T") for one in dict.fromkeys((strengths[0], strengths[-1])))
     return (
-        f"{printable(trap.name)}: {len(trap.electrodes)} electrodes on {len(trap.outputs)} outputs, "
-        f"field {field}, {trap.bore.ends} ends"
+        f"{printable(trap.name)}: {len(trap.electrodes)} electrodes on "
+        f"{len(trap.outputs)} outputs, field {field}, {trap.bore.ends} ends"
     )
 
 
@@ -123,7 +123,9 @@ def _outputs(trap: Trap) -> str:
         for one in switches
     ]
     switch_head = ("switch", "levels", "edge", "clock", "hazardous")
-    return "\n\n".join(part for part in (_table(head, rows), _table(switch_head, switch_rows)) if part)
+    return "\n\n".join(
+        part for part in (_table(head, rows), _table(switch_head, switch_rows)) if part
+    )
 
 
 def _lines(trap: Trap) -> str:

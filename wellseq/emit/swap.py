@@ -37,7 +37,12 @@ def put_in_place(fresh: Path, target: Path, aside: Path) -> None:
         except OSError:
             os.rename(aside, target)
             raise
-        _settle(target, lambda: (os.rename(target, fresh), os.rename(aside, target)))
+        _settle(target, lambda: _back(fresh, target, aside))
+
+
+def _back(fresh: Path, target: Path, aside: Path) -> None:
+    os.rename(target, fresh)
+    os.rename(aside, target)
 
 
 def _settle(target: Path, undo: Callable[[], object]) -> None:

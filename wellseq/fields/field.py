@@ -74,7 +74,7 @@ class Field:
 
     `electrodes` names in order, `radius_m` of the bore, `z_m` (nz,) nodes 8 radii beyond the stack,
     `phi` (5, ne, nz) derivatives 0 … 4 on the axis per V, `error_V_per_V` between nodes,
-    `gap_error_V_per_V` (ne − 1,) of the gap rule per volt between neighbours.
+    `gap_error_V_per_V` (ne,) what the rule for gaps leaves out, an estimate.
     """
 
     def __init__(self, trap: TrapLike) -> None:

@@ -98,6 +98,4 @@ class Claimed:
     throughout: bool = False
 
 
-Effect = (
-    Placed | Caught | Released | Kicked | Evaporated | Nested | Acted | Assumed | Claimed
-)
+Effect = Placed | Caught | Released | Kicked | Evaporated | Nested | Acted | Assumed | Claimed

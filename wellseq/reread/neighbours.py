@@ -11,14 +11,15 @@ from __future__ import annotations
 from bisect import bisect_left
 from collections.abc import Iterator
 from fractions import Fraction
+from math import lcm
 
 from wellseq.reread.plan import Converter, Neighbours, Plan, Switch
 from wellseq.reread.reading import Unsound
-from wellseq.reread.rules import ROUNDING, changes
+from wellseq.reread.rules import ROUNDING
 from wellseq.reread.table import UNSOUND, Table
 
-Value = tuple[str, int] | Fraction
-"""What an electrode may be at: (converter, code), or fixed volts."""
+Value = tuple[str, int]
+"""What an electrode may be at: (converter, code), or (switch, level) of a fixed level."""
 
 
 def too_far_apart(
@@ -38,16 +39,24 @@ def too_far_apart(
 
 
 class _Course:
-    """All electrodes during one block; `before` is the block that was played before it."""
+    """All electrodes during one block; `before` is the block that was played before it.
+
+    Voltages are whole numbers of one common unit, 1/`scale` V, so that nothing rounds.
+    """
 
     def __init__(
         self, plan: Plan, table: Table, before: Table | None, driven: list[list[str]]
     ) -> None:
         self.table, self.before = table, before
         self.outputs: dict[str, Converter | Switch] = {
-            output.name: output for output in (*plan.converters, *plan.switches)
+            output.name: output for output in plan.outputs
         }
-        self.changes = {name: changes(table.columns[name]) for name in self.outputs}
+        self.scale = _common_scale(plan)
+        self.lines = {
+            one.name: tuple(number * (self.scale // one.whole[2]) for number in one.whole[:2])
+            for one in plan.converters
+        }
+        self.changes = table.changes
         tick_s = table.block.tick_s
         self.drives = [
             (cells[0], Fraction(cells[1]) / tick_s, Fraction(cells[2]) / tick_s, Fraction(cells[5]))
@@ -56,39 +65,65 @@ class _Course:
 
     def first_too_far(self, pair: Neighbours) -> int | None:
         """The first row at which, or after which, two neighbours may stand too far apart."""
-        if pair.outputs[0] == pair.outputs[1]:
+        if pair.outputs[0] == pair.outputs[1] or self._never(pair):
             return None
         rows = {0, *self._rows(pair.outputs[0]), *self._rows(pair.outputs[1])}
         rows |= set(self._driven_rows(pair.electrodes))
-        judged: dict[tuple[frozenset[Value], frozenset[Value], Fraction], bool] = {}
         last = len(self.table.ticks) - 1
-        for row in sorted(min(row, last) for row in rows):
-            one, other = (self._at(output, row) for output in pair.outputs)
+        for row in sorted({min(row, last) for row in rows}):
             added_V = sum((self._drive_V(name, row) for name in pair.electrodes), Fraction(0))
-            key = (one, other, added_V)
-            if key not in judged:
-                judged[key] = self._too_far(one, other, pair.limit_V - added_V)
-            if judged[key]:
-                return row
+            bound = self._bound(pair, added_V)
+            others = [self._volts(value) for value in self._at(pair.outputs[1], row)]
+            for value in self._at(pair.outputs[0], row):
+                volts = self._volts(value)
+                if any(abs(volts - other) > bound for other in others):
+                    return row
         return None
 
-    def _too_far(self, ones: frozenset[Value], others: frozenset[Value], limit_V: Fraction) -> bool:
-        bound = limit_V + abs(limit_V) * ROUNDING
-        for one in ones:
-            one_V, one_half = self._volts(one)
-            for other in others:
-                other_V, other_half = self._volts(other)
-                if abs(one_V - other_V) > bound + one_half + other_half:
-                    return True
-        return False
+    def _never(self, pair: Neighbours) -> bool:
+        """Whether even the extremes of the whole block, drives included, are near enough."""
+        driven = sum(
+            (drive[3] for drive in self.drives if drive[0] in pair.electrodes), Fraction(0)
+        )
+        (low, high), (other_low, other_high) = (self._extremes(name) for name in pair.outputs)
+        return max(high - other_low, other_high - low) <= self._bound(pair, driven)
 
-    def _volts(self, value: Value) -> tuple[Fraction, Fraction]:
-        """Electrode volts, and the half code that rounding may have added to them."""
-        if isinstance(value, Fraction):
-            return value, Fraction(0)
-        converter = self.outputs[value[0]]
-        assert isinstance(converter, Converter)
-        return converter.volts(value[1]), converter.code_V / 2
+    def _bound(self, pair: Neighbours, added_V: Fraction) -> int:
+        """The largest difference that is allowed, in units, half a code of each side included."""
+        halves = sum((self._half_code_V(name) for name in pair.outputs), Fraction(0))
+        return int((pair.limit_V * (1 + ROUNDING) + halves - added_V) * self.scale)
+
+    def _half_code_V(self, name: str) -> Fraction:
+        output = self.outputs[name]
+        if isinstance(output, Converter):
+            return output.code_V / 2
+        behind = [self._half_code_V(level) for level in output.levels if isinstance(level, str)]
+        return max(behind, default=Fraction(0))
+
+    def _extremes(self, name: str) -> tuple[int, int]:
+        """The lowest and highest volts of an output in this block, in units."""
+        output = self.outputs[name]
+        if isinstance(output, Converter):
+            codes = {min(self.table.columns[name]), max(self.table.columns[name])}
+            codes.add(self._code_before(name, 0))
+            found = [self._volts((name, code)) for code in codes]
+            return min(found), max(found)
+        ends = [
+            self._extremes(level) if isinstance(level, str) else (self._volts((name, at)),) * 2
+            for at, level in enumerate(output.levels)
+        ]
+        return min(end[0] for end in ends), max(end[1] for end in ends)
+
+    def _volts(self, value: Value) -> int:
+        """Electrode volts in units."""
+        name, number = value
+        output = self.outputs[name]
+        if isinstance(output, Converter):
+            start, slope = self.lines[name]
+            return start + slope * number
+        level = output.levels[number]
+        assert isinstance(level, Fraction)
+        return int(level * self.scale)
 
     # at which rows to look
 
@@ -135,7 +170,7 @@ class _Course:
             if isinstance(behind, str):
                 values |= self._at(behind, row)
             else:
-                values.add(behind)
+                values.add((name, level))
         return frozenset(values)
 
     def _levels(self, switch: Switch, row: int) -> set[int]:
@@ -166,3 +201,15 @@ class _Course:
             if ring == electrode and start <= high and stop >= low
         ]
         return max(running, default=Fraction(0))
+
+
+def _common_scale(plan: Plan) -> int:
+    """The least whole number of units to the volt in which every voltage is a whole number."""
+    bottoms = [converter.whole[2] for converter in plan.converters]
+    bottoms += [
+        level.denominator
+        for switch in plan.switches
+        for level in switch.levels
+        if isinstance(level, Fraction)
+    ]
+    return lcm(*bottoms)

@@ -8,6 +8,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass
 from fractions import Fraction
+from math import lcm
 
 from wellseq.reread.reading import Part
 
@@ -19,7 +20,8 @@ SCHEMA_VERSION = 1
 class Converter:
     """A converter output; electrode volts = gain * (low + code * lsb) + offset.
 
-    lsb = (high - low) / (2^bits - 1), in V.
+    lsb = (high - low) / (2^bits - 1), in V.  `whole` says the same in whole numbers:
+    volts = (start + slope * code) / bottom.
     """
 
     name: str
@@ -42,10 +44,13 @@ class Converter:
         """Electrode volts from one code to the next, without sign."""
         return abs(self.gain) * (self.high_V - self.low_V) / self.code_max
 
-    def volts(self, code: int) -> Fraction:
-        """Exact electrode volts of a code."""
-        nominal = self.low_V + code * (self.high_V - self.low_V) / self.code_max
-        return self.gain * nominal + self.offset_V
+    @property
+    def whole(self) -> tuple[int, int, int]:
+        """(start, slope, bottom), exact."""
+        at_zero = self.gain * self.low_V + self.offset_V
+        per_code = self.gain * (self.high_V - self.low_V) / self.code_max
+        bottom = lcm(at_zero.denominator, per_code.denominator)
+        return int(at_zero * bottom), int(per_code * bottom), bottom
 
 
 @dataclass(frozen=True, slots=True)
@@ -106,9 +111,15 @@ class Plan:
     content_id: str
     shallow_steps: frozenset[int]
 
-    def converter(self, name: str) -> Converter:
-        """The converter of that name."""
-        return next(converter for converter in self.converters if converter.name == name)
+    @property
+    def outputs(self) -> tuple[Converter | Switch, ...]:
+        """Converters, then switches, as their columns stand."""
+        return (*self.converters, *self.switches)
+
+    @property
+    def columns(self) -> tuple[Converter | Switch | Line, ...]:
+        """Everything that has a column, in order."""
+        return (*self.converters, *self.switches, *self.lines)
 
 
 def plan(manifest: Part) -> Plan:

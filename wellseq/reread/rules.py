@@ -8,7 +8,6 @@ from __future__ import annotations
 from array import array
 from collections.abc import Iterator
 from fractions import Fraction
-from itertools import pairwise
 
 from wellseq.reread.plan import Converter, Plan
 from wellseq.reread.reading import Unsound
@@ -35,27 +34,23 @@ def wrongs(plan: Plan, tables: list[Table]) -> Iterator[Unsound]:
             )
 
 
-def changes(column: array[int]) -> list[int]:
-    """The rows at which a column differs from the row before."""
-    return [row for row, (before, after) in enumerate(pairwise(column), 1) if before != after]
-
-
 def _at(table: Table, row: int, message: str) -> Unsound:
     return Unsound(UNSOUND, table.block.table, message, row + 2)
 
 
 def _clocks(plan: Plan, table: Table) -> Iterator[Unsound]:
     tick_s = table.block.tick_s
-    for output in (*plan.converters, *plan.switches, *plan.lines):
+    for output in plan.columns:
         every = output.clock_s / tick_s
         if every.denominator != 1:
             yield _at(table, 0, f"the clock of {output.name} is no whole number of ticks")
             continue
-        column = table.columns[output.name]
+        column, whole = table.columns[output.name], int(every)
         if isinstance(output, Converter) and not output.holds:
-            row = _off_line(table, column, int(every))
+            row = _off_line(table, column, whole)
         else:
-            row = next((row for row in changes(column) if table.ticks[row] % int(every)), None)
+            changed = table.changes[output.name]
+            row = next((row for row in changed if table.ticks[row] % whole), None)
         if row is not None:
             yield _at(table, row, f"{output.name} changes off its clock")
 
@@ -85,13 +80,14 @@ def _slew(plan: Plan, table: Table) -> Iterator[Unsound]:
     """Held: a change is over before the output's next one; drawn: the slope from row to row."""
     for converter in plan.converters:
         column = table.columns[converter.name]
-        rows = changes(column)
+        rows = table.changes[converter.name]
         limit = converter.slew_V_per_s * (1 + ROUNDING)
-        code_V, tick_s = converter.code_V, table.block.tick_s
+        codes_per_tick = limit * table.block.tick_s / converter.code_V
+        top, bottom = codes_per_tick.numerator, codes_per_tick.denominator
         ends = rows[1:] if converter.holds else rows
         starts = rows if converter.holds else [row - 1 for row in rows]
         for row, start, end in zip(rows, starts, ends, strict=False):
             codes = abs(column[row] - column[row - 1]) - 1
-            if codes * code_V > limit * (table.ticks[end] - table.ticks[start]) * tick_s:
+            if codes * bottom > top * (table.ticks[end] - table.ticks[start]):
                 yield _at(table, row, f"{converter.name} changes faster than its slew")
                 break

@@ -10,6 +10,7 @@ import re
 from array import array
 from collections.abc import Iterator
 from dataclasses import dataclass
+from itertools import pairwise
 
 from wellseq.reread.plan import BlockPlan, Converter, Plan
 from wellseq.reread.reading import Unsound
@@ -21,11 +22,15 @@ WHOLE = re.compile(r"0|[1-9][0-9]{0,17}")
 
 @dataclass(frozen=True, slots=True)
 class Table:
-    """One block as read: ticks (rows,), and per column its codes, levels or states (rows,)."""
+    """One block as read: ticks (rows,), and per column its codes, levels or states (rows,).
+
+    `changes` are, per column, the rows at which it differs from the row before.
+    """
 
     block: BlockPlan
     ticks: array[int]
     columns: dict[str, array[int]]
+    changes: dict[str, list[int]]
 
 
 def read_table(content: bytes, plan: Plan, block: BlockPlan) -> Table:
@@ -40,11 +45,16 @@ def read_table(content: bytes, plan: Plan, block: BlockPlan) -> Table:
         raise Unsound(
             UNSOUND, file, f"{len(rows)} rows are here, {block.rows} were written", len(lines)
         )
-    table = Table(block, array("q"), {name: array("q") for name in _names(plan)})
+    table = Table(block, array("q"), {name: array("q") for name in _names(plan)}, {})
     for start in range(0, len(rows), CHUNK_ROWS):
         _take(table, plan, rows[start : start + CHUNK_ROWS], len(head), start + 2)
     _in_order(table)
+    table.changes.update((name, _changes(column)) for name, column in table.columns.items())
     return table
+
+
+def _changes(column: array[int]) -> list[int]:
+    return [row for row, (before, after) in enumerate(pairwise(column), 1) if before != after]
 
 
 def _lines(content: bytes, file: str) -> list[str]:
@@ -71,7 +81,7 @@ def _head(plan: Plan) -> list[str]:
 
 
 def _names(plan: Plan) -> Iterator[str]:
-    for output in (*plan.converters, *plan.switches, *plan.lines):
+    for output in plan.columns:
         yield output.name
 
 
@@ -115,9 +125,10 @@ def _states(texts: tuple[str, ...], states: tuple[str, ...], file: str, name: st
 
 def _agree(converter: Converter, pairs: set[tuple[str, str]], file: str) -> None:
     """Every code and the volts beside it must say the same."""
+    start, slope, bottom = converter.whole
     for code, volts in pairs:
-        exact = converter.volts(int(code))
-        right = repr(exact.numerator / exact.denominator)
+        # One division of whole numbers is rounded correctly (Python's `int / int`).
+        right = repr((start + slope * int(code)) / bottom)
         if volts != right:
             raise Unsound(
                 UNSOUND,

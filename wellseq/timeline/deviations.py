@@ -133,7 +133,10 @@ class Deviations:
         faded = math.exp(-duration_s / tau)
         if piece is not None and piece.shape is Shape.EDGE:
             # within its window an edge may have any shape, so only what is left after it counts
-            left = min(abs(piece.to_V - piece.from_V), tau * converter.slew_V_per_s)
+            swing_V = abs(piece.to_V - piece.from_V)
+            slewing_s = swing_V / converter.slew_V_per_s
+            quiet_s = max(0.0, float(piece.end_s - piece.start_s) - slewing_s)
+            left = min(swing_V, tau * converter.slew_V_per_s) * math.exp(-quiet_s / tau)
             self.carry.behind_V[converter.name] = before * faded + left
             return before + late
         self.carry.behind_V[converter.name] = before * faded + tau * slope * (1 - faded)

@@ -8,6 +8,7 @@ until the edge is over, rounded up to the outputs' common clock, so that what fo
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 from fractions import Fraction
 from typing import TYPE_CHECKING
@@ -40,11 +41,13 @@ def pulse(drawing: Drawing, electrodes: Sequence[str], volts: float, duration_s:
     if any(isinstance(drawing.trap.output_of(electrode), Switch) for electrode in electrodes):
         _pulse_switches(drawing, electrodes, volts, duration_s)
         return
-    longest = max(_fastest(drawing, electrode, volts) for electrode in electrodes)
     there = drawing.targets(dict.fromkeys(electrodes, volts), None)
-    drawing.move_all(there, longest, Shape.EDGE)
+    rise = max(_fastest(drawing, electrode, volts) for electrode in electrodes)
+    settled = max(_settling(drawing, electrode, volts) for electrode in electrodes)
+    drawing.move_all(there, rise, Shape.EDGE)
     drawing.hold(duration_s)
-    drawing.move_all(drawing.targets(back, None), longest, Shape.EDGE)
+    drawing.move_all(drawing.targets(back, None), rise + settled, Shape.EDGE)
+    drawing.now = next_multiple(drawing.now, drawing.common_s)
 
 
 def close_gate(drawing: Drawing, near: str, far: str, level: float, closing_s: Fraction) -> None:
@@ -83,11 +86,15 @@ def _close_by_switch(
 
 def _close_by_converter(drawing: Drawing, near: str, level: float, half_s: Fraction) -> None:
     rise = _fastest(drawing, near, level)
-    start = half_s - rise / 2
+    name = drawing.converter_behind(near)
+    output = drawing.trap.output(name) if name is not None else None
+    late = output.delay_s + output.time_constant_s if isinstance(output, Converter) else 0
+    start = half_s - rise / 2 - late
     if _too_soon(drawing, near, start):
         return
+    settled = _settling(drawing, near, level)
     drawing.hold(start)
-    drawing.move_all(drawing.targets({near: level}, None), rise, Shape.EDGE)
+    drawing.move_all(drawing.targets({near: level}, None), rise + settled, Shape.EDGE)
     drawing.now = next_multiple(drawing.now, drawing.common_s)
 
 
@@ -141,13 +148,32 @@ def _level_index(drawing: Drawing, electrode: str, level: float | str) -> int | 
 
 def _fastest(drawing: Drawing, electrode: str, volts: float) -> Fraction:
     """The shortest time on the output's clock in which an electrode can go straight to `volts`."""
-    name = drawing.converter_behind(electrode)
-    output = drawing.trap.output(name) if name else drawing.trap.output_of(electrode)
+    output = _moved_by(drawing, electrode)
     if not isinstance(output, Converter):
         return output.clock_s
     swing = Fraction(abs(volts - drawing.electrode_V(electrode)))
-    needed = swing / Fraction(output.slew_V_per_s) + output.delay_s
+    needed = swing / Fraction(output.slew_V_per_s)
     return max(next_multiple(needed, output.clock_s), output.clock_s)
+
+
+def _settling(drawing: Drawing, electrode: str, volts: float) -> Fraction:
+    """Time on the output's clock, after the slewing, until the electrode is within half a code.
+
+    A single pole settles from a swing V to half a code c/2 in tau ln(2 V/c); common practice, see
+    IEEE Std 1658 on settling.
+    """
+    output = _moved_by(drawing, electrode)
+    if not isinstance(output, Converter):
+        return Fraction(0)
+    swing = abs(volts - drawing.electrode_V(electrode))
+    halves = max(2 * swing / (output.gain * output.code_V), 1.0)
+    tail = output.delay_s + output.time_constant_s * Fraction(math.log(halves))
+    return next_multiple(tail, output.clock_s)
+
+
+def _moved_by(drawing: Drawing, electrode: str) -> Converter | Switch:
+    name = drawing.converter_behind(electrode)
+    return drawing.trap.output(name) if name else drawing.trap.output_of(electrode)
 
 
 def _pulse_switches(

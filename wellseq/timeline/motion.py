@@ -164,6 +164,7 @@ class _Walk:
 
     def __init__(self, trap: Trap, shipped: ShippedBlock, carry: Carry) -> None:
         self.trap, self.block, self.carry = trap, shipped.block, carry
+        self.shipped = shipped
         self.volts = dict(shipped.block.volts)
         self.levels = dict(shipped.block.levels)
         self.deviations = Deviations(trap, shipped, self.carry)
@@ -176,7 +177,7 @@ class _Walk:
 
     def walk(self) -> Iterator[Segment]:
         block = self.block
-        windows = [_window(self.trap, edge) for edge in block.edges]
+        windows = _windows(self.shipped)
         times = _breakpoints(block, windows)
         pieces, edges, spans = list(block.pieces), list(zip(block.edges, windows, strict=True)), 0
         next_piece = next_edge = 0
@@ -290,10 +291,15 @@ class _Walk:
         return Swing(self.users[switch.name], volts[0], volts[1], drift)
 
 
-def _window(trap: Trap, edge: Edge) -> tuple[Fraction, Fraction]:
-    """When an edge may be under way at the electrode, rounding of its command included."""
-    clock = trap.output(edge.output).clock_s
-    return max(edge.start_s - clock / 2, Fraction(0)), edge.end_s + clock / 2
+def _windows(shipped: ShippedBlock) -> list[tuple[Fraction, Fraction]]:
+    """When each edge may be under way at the electrode, as written and as emitted."""
+    errors = {(one.output, one.asked_s): one.error_s for one in shipped.roundings}
+    found = []
+    for edge in shipped.block.edges:
+        error = errors.get((edge.output, edge.command_s), Fraction(0))
+        start = edge.start_s + min(error, Fraction(0))
+        found.append((max(start, Fraction(0)), edge.end_s + max(error, Fraction(0))))
+    return found
 
 
 def _breakpoints(block: Block, windows: list[tuple[Fraction, Fraction]]) -> list[Fraction]:

@@ -13,6 +13,7 @@ from wellseq.fields.inverse import Side, way_out
 from wellseq.fields.minima import extrema
 from wellseq.model import effects
 from wellseq.timeline.timeline import Event
+from wellseq.wells.diagnosis import under
 from wellseq.wells.living import Bunch, Well
 from wellseq.wells.wells import Trouble, WayOut
 
@@ -20,6 +21,8 @@ if TYPE_CHECKING:
     from wellseq.wells.trace import Tracing
 
 Vector = npt.NDArray[np.float64]
+PLACED_RADII = 0.5
+"""A well belongs to an electrode when its minimum is under it or this many bore radii beside it."""
 EVAPORATION_FLOOR_SHARE = 0.8
 """The floor during and after an evaporation to U is this share of U."""
 
@@ -31,6 +34,7 @@ class Arrivals:
         self.tracing = tracing
         self.evaporating: set[int] = set()
         self._let_out: dict[int, tuple[int, float]] = {}
+        self._kicking: dict[int, tuple[Event, effects.Kicked, Well]] = {}
 
     def before(self, event: Event, vector: Vector) -> None:
         """An event's step begins; `vector` are the wished electrode volts then."""
@@ -41,6 +45,7 @@ class Arrivals:
                 well = self._needed(event, event.effect.light)
                 if well is not None:
                     well.paused = True
+                    self._kicking[event.number] = event, event.effect, well
             case effects.Evaporated():
                 self._lower(event, event.effect)
             case effects.Nested():
@@ -73,11 +78,12 @@ class Arrivals:
         low, high = tracing.field.span_m(effect.electrode)
         sign = self._sign(cloud)
         found = locate(tracing.field, sign, vector, (low + high) / 2)
-        if found is None or found.high_m < low or found.low_m > high:
+        near = PLACED_RADII * tracing.field.radius_m
+        if found is None or found.high_m < low - near or found.low_m > high + near:
             where = "it would slide out of the stack"
             if found is not None:
                 where = f"it would slide to z = {found.z_m * 1e3:.1f} mm"
-                where += self._electrode_at(found.z_m)
+                where += under(tracing.field, found.z_m)
             tracing.fail(
                 Trouble.NOT_PLACED,
                 cloud,
@@ -208,6 +214,16 @@ class Arrivals:
             well.z_m = found.z_m
         living.drop(effect.light)
 
+    def while_open(self, number: int, vector: Vector) -> None:
+        """A kick stands open at these voltages: the light cloud must find its way out."""
+        kicking = self._kicking.pop(number, None)
+        if kicking is None:
+            return
+        event, effect, well = kicking
+        side = self._side(effect.through, well.z_m)
+        climb = climb_out(self.tracing.field, well.charge_sign, vector, well.z_m, side)
+        self._way(event, effect.light, climb)
+
     def _lower(self, event: Event, effect: effects.Evaporated) -> None:
         well = self._needed(event, effect.cloud)
         if well is not None:
@@ -261,13 +277,6 @@ class Arrivals:
     def _side(self, through: tuple[str, ...], z_m: float) -> Side:
         low, high = self.tracing.field.span_m(through[0])
         return "right" if (low + high) / 2 > z_m else "left"
-
-    def _electrode_at(self, z_m: float) -> str:
-        for name in self.tracing.field.electrodes:
-            low, high = self.tracing.field.span_m(name)
-            if low <= z_m <= high:
-                return f", under {name}"
-        return ""
 
 
 def climb_out(field: Field, sign: int, vector: Vector, z_m: float, side: Side) -> float:

@@ -90,11 +90,12 @@ class Hold:
 
 @dataclass(frozen=True, slots=True)
 class Lost:
-    """A part on which no region could be proved to hold the minimum."""
+    """A part on which no region could be proved to hold the minimum, up to a ripple (V)."""
 
     window_s: tuple[Fraction, Fraction]
     from_m: float
     part: Part
+    ripple_V: float
 
 
 @dataclass(frozen=True, slots=True)
@@ -120,14 +121,15 @@ class Holding:
     ) -> Iterator[Hold | Lost]:
         """Follow a well through a segment; stops after the first part that is lost."""
         waiting = [(part_of(segment), 0)]
+        ripple_V = max(RIPPLE_V, RIPPLE_SHARE * floor_V)
         while waiting:
             part, cuts = waiting.pop()
-            known = self._solve(sign, z_m, part, max(RIPPLE_V, RIPPLE_SHARE * floor_V))
+            known = self._solve(sign, z_m, part, ripple_V)
             halves = part.cut() if cuts < CUTS_MAX and self._loose(part, known, floor_V) else None
             if halves is not None:
                 waiting += [(halves[1], cuts + 1), (halves[0], cuts + 1)]
             elif known is None:
-                yield Lost(part.window_s, z_m, part)
+                yield Lost(part.window_s, z_m, part, ripple_V)
                 return
             else:
                 hold = self._hold(part, z_m, known)

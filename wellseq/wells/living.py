@@ -7,7 +7,7 @@ from dataclasses import dataclass, field
 from wellseq.model.sequence import CloudDeclared
 
 
-@dataclass(slots=True)
+@dataclass(slots=True, eq=False)
 class Well:
     """A well that is followed: its clouds (all of one sign), and where its minimum is (m).
 
@@ -23,7 +23,7 @@ class Well:
     paused: bool = False
 
 
-@dataclass(slots=True)
+@dataclass(slots=True, eq=False)
 class Bunch:
     """A bunch between two gates whose energy counts from ground; no temperature is known yet.
 
@@ -38,7 +38,7 @@ class Bunch:
     kept_V: float | None = None
 
 
-@dataclass(slots=True)
+@dataclass(slots=True, eq=False)
 class Living:
     """All that is in the trap, in the order in which it came."""
 

@@ -16,6 +16,7 @@ from wellseq.timeline.shipped import Shipped, ShippedBlock
 from wellseq.timeline.timeline import Event, Timeline
 from wellseq.wells.arrivals import Arrivals
 from wellseq.wells.bunches import guard
+from wellseq.wells.diagnosis import Neighbour, diagnose
 from wellseq.wells.holding import Hold, Holding, Lost
 from wellseq.wells.living import Living, Well
 from wellseq.wells.wells import Held, Separation, Trouble, Unproved, WayOut, Wells
@@ -91,6 +92,8 @@ class Tracing:
 
     def _segment(self, segment: Segment) -> None:
         spans: dict[int, tuple[float, float]] = {}
+        if len(segment.moves) == 0:
+            self.arrivals.while_open(segment.number, segment.base)
         for well in list(self.living.wells):
             if well.paused or well not in self.living.wells:
                 continue
@@ -149,42 +152,29 @@ class Tracing:
             )
 
     def _lost(self, well: Well, segment: Segment, lost: Lost) -> None:
-        """Say why a well could not be followed: sampled wells tell vanishing from dividing."""
-        trouble, sure, what = self._diagnose(well, lost)
+        """Say why a well could not be followed, and follow its clouds no more."""
+        neighbours = [
+            Neighbour(other.clouds[0], other.z_m)
+            for other in self.living.wells
+            if other is not well and other.charge_sign == well.charge_sign
+        ]
+        found = diagnose(self.field, well.charge_sign, lost, neighbours)
         start_s, end_s = map(float, lost.window_s)
         for cloud in list(well.clouds):
             self.unproved.append(
                 Unproved(
-                    trouble,
+                    found.trouble,
                     cloud,
                     self.index,
                     segment.number,
                     start_s,
                     end_s,
                     lost.from_m,
-                    f"the well of '{cloud}' at z = {lost.from_m * 1e3:.1f} mm {what}",
-                    sure=sure,
+                    f"the well of '{cloud}' at z = {lost.from_m * 1e3:.1f} mm {found.words}",
+                    sure=found.sure,
                 )
             )
         self.living.drop_well(well)
-
-    def _diagnose(self, well: Well, lost: Lost) -> tuple[Trouble, bool, str]:
-        low, high = self._basin(well, lost)
-        names = self.field.electrodes
-        for vector in (lost.part.base, lost.part.base + lost.part.moves.sum(axis=0)):
-            named = dict(zip(names, map(float, vector), strict=True))
-            near = self.field.wells(named, well.charge_sign, (low, high))
-            if not near:
-                return Trouble.LOST, True, "vanishes"
-            if len(near) > 1:
-                return Trouble.SPLITS, True, f"divides into {len(near)}"
-        return Trouble.LOST, False, "could not be proved to hold"
-
-    def _basin(self, well: Well, lost: Lost) -> tuple[float, float]:
-        """The stretch of axis around a lost well in which its minimum must still be found."""
-        reach = self.field.radius_m
-        low, high = well.core_m
-        return min(low, lost.from_m) - reach, max(high, lost.from_m) + reach
 
     # wells beside wells
 

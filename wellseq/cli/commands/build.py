@@ -1,4 +1,4 @@
-"""Build a sequence: check it and, if nothing stands in the way, publish its tables as a folder.
+"""Check a sequence and, if nothing stands in the way, publish its tables.
 
 The folder is written whole or not at all; an older one that wellseq made is replaced.  With --each
 every value of the sequence's `each` becomes a folder of its own, FOLDER-1, FOLDER-2 and so on.

@@ -1,4 +1,4 @@
-"""Check sequences: everything that stands between them and their tables.
+"""Say everything that stands between sequences and their tables.
 
 Nothing is written.  Several files are all checked; the worst decides the exit status.
 """

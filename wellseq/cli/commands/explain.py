@@ -1,4 +1,4 @@
-"""Explain a word: a step, a clause, a unit, a finding, or what verify can find.
+"""Explain a step, a clause, a unit or a finding.
 
 The pages are those of the manual; what is known about a unit or a clause comes from the program.
 """
@@ -56,14 +56,14 @@ def pages() -> list[tuple[str, Path]]:
 def _clause(name: str) -> str:
     """Which steps take a clause or a bare word of this name, and what stands after it."""
     from wellseq.base.names import RESERVED
-    from wellseq.model.step import clauses_of
-    from wellseq.model.steps import verbs
+    from wellseq.model.reader import signature
+    from wellseq.model.steps import step_class, verbs
 
     found = []
-    for verb, kind in sorted(verbs().items()):
-        for word, takes in clauses_of(kind):
-            if word == name:
-                found.append(f"  {verb}: {takes}")
+    for verb in verbs():
+        kind = step_class(verb)
+        if kind is not None and name in {**signature(kind).clauses, **signature(kind).words}:
+            found.append(f"  {' '.join((kind.__doc__ or '').split(chr(10) * 2)[0].split())}")
     if found:
         return f"`{name}` is a word of these steps:\n" + "\n".join(found)
     return f"`{name}` is a word of the language; no name may be one." if name in RESERVED else ""
@@ -79,21 +79,14 @@ def _unit(name: str) -> str:
         return ""
     if not name:
         return ""
-    return f"`{name}` is a unit: 1 {name} = {_number(factor)} {kind_name(kind)}"
-
-
-def _number(factor: object) -> str:
-    return f"{float(str(factor)) if '/' not in str(factor) else _quotient(str(factor)):g}"
-
-
-def _quotient(text: str) -> float:
-    top, _, bottom = text.partition("/")
-    return int(top) / int(bottom)
+    return f"`{name}` is a unit: 1 {name} = {float(factor):g} {kind_name(kind)}"
 
 
 def _near(name: str) -> str:
     from wellseq.base.names import RESERVED, nearest
     from wellseq.base.quantity import UNITS
 
-    known = {key for key, _ in pages()} | RESERVED | set(UNITS)
+    from wellseq.model.steps import verbs
+
+    known = {key for key, _ in pages()} | RESERVED | set(UNITS) | set(verbs())
     return nearest(name, known, "known names")

@@ -1,5 +1,6 @@
-"""Start anew: write a small trap file and a sequence that checks, to change into your own.
+"""Write a small trap file and sequence to start from.
 
+Both check and build as they are, to be changed into your own.
 Files that are there already are left alone, and then nothing is written.
 """
 

@@ -1,4 +1,4 @@
-"""Show a trap file: the stack drawn in text, and what every output, line and trigger can do."""
+"""Draw a trap file in text, with what each of its parts can do."""
 
 from __future__ import annotations
 

@@ -1,4 +1,4 @@
-"""Verify published folders: read every byte back and judge it, from the folder alone.
+"""Read published folders back, every byte, and judge them.
 
 The reader shares no code with the writer.  It says that a folder is as it was written and within
 the limits it carries; it cannot say that nobody forged it.

@@ -6,7 +6,7 @@ are escaped, so that none of them can act as Markdown.
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterator, Mapping, Sequence
 
 from wellseq.base.data import data_folder
 from wellseq.base.finding import Finding, Verdict
@@ -317,7 +317,7 @@ def _roundings(case: Case) -> str:
     return f"## Rounding of times, largest first\n\n{_table(head, rows)}{said}"
 
 
-def _table(head: tuple[str, ...], rows: list[tuple[str, ...]]) -> str:
+def _table(head: tuple[str, ...], rows: Sequence[tuple[str, ...]]) -> str:
     lines = ["| " + " | ".join(cells) + " |" for cells in (head, *rows)]
     lines.insert(1, "|" + " --- |" * len(head))
     return "\n".join(lines)

@@ -29,8 +29,11 @@ def _lines(thing: Examined, options: Options) -> Iterator[str]:
         for finding in thing.by_margin():
             yield _line(thing, finding, "note")
     shown = printable(thing.shown)
-    for name, why in thing.not_run:
-        yield f"{shown}:1:1: error: not examined: {_flat(why)} [{name}]"
+    # What did not run because of an error listed above is no error of its own.
+    severity = "note" if any(finding.blocks for finding in thing.findings) else "error"
+    for why, names in thing.by_cause().items():
+        listed = f"{', '.join(names)}: {_flat(why)}"
+        yield f"{shown}:1:1: {severity}: not examined: {listed} [not-examined]"
     if thing.clear:
         yield f"{shown}:1:1: note: {len(thing.ran)} checks ran, nothing stands in the way [cleared]"
 

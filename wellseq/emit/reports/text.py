@@ -39,8 +39,8 @@ def _paragraphs(thing: Examined, options: Options) -> Iterator[str]:
         yield ""
     if options.margins:
         yield from _margins(thing, options)
-    for name, why in thing.not_run:
-        yield from _row("not run", f"{name}: {printable(why)}", options)
+    for why, names in thing.by_cause().items():
+        yield from _row("not run", f"{', '.join(names)}: {printable(why)}", options)
     yield from _closing(thing, options)
 
 
@@ -81,8 +81,7 @@ def _where(finding: Finding) -> str:
     elif finding.step:
         words.append(f"step {printable(finding.step)}")
     if finding.passes:
-        passes = ", then ".join(str(number) for number in finding.passes)
-        words.append(f"pass {passes}")
+        words.append("pass " + ", inner pass ".join(str(number) for number in finding.passes))
     return ", ".join(words)
 
 
@@ -132,7 +131,7 @@ def _closing(thing: Examined, options: Options) -> Iterator[str]:
     ]
     verdict = "clear" if thing.clear else "not clear"
     if thing.cause:
-        verdict += f", not examined wholly ({printable(thing.cause)})"
+        counts.append(f"{len(thing.not_run)} checks not run")
     said = ", ".join(counts) or "no findings"
     colour = _COLOUR[Verdict.PASS if thing.clear else Verdict.FAIL]
     length = f"; {amount(thing.duration_s, 's')} played" if thing.duration_s is not None else ""
