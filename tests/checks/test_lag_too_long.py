@@ -1,11 +1,13 @@
 """`lag-too-long`: time constant and delay against a tenth of each motion's time."""
 
+from dataclasses import replace
 from fractions import Fraction
 
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from wellseq.checks.judging import check
+from wellseq.timeline.timeline import Shape
 
 NAME = "lag-too-long"
 
@@ -26,6 +28,13 @@ def test_exactly_a_tenth_passes_and_a_nanosecond_less_time_fails(make):
         "a lags 3 us behind (time constant and delay) while it moves; "
         "at most 3 us, a tenth of that motion's time"
     )
+
+
+def test_an_edge_as_fast_as_its_output_is_not_asked(make):
+    short = case(make, Fraction(10))
+    edges = [replace(piece, shape=Shape.EDGE) for piece in short.timeline.blocks[0].pieces]
+    trap = short.trap
+    assert make.verdicts(make.case(trap, [make.block(trap, edges)]), NAME) == []
 
 
 def test_it_may_be_allowed(make):

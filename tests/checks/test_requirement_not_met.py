@@ -62,6 +62,14 @@ def test_depth_is_the_least_over_the_step_before(make, beyond):
     assert found.place == make.place(5)
 
 
+def test_a_bunch_without_a_temperature_is_as_deep_as_its_gates(make):
+    cold = held_at(make, 1, 55.0, 55.0)
+    gates = held_at(make, 1, 4000.0, 4100.0, energetic=True)
+    known = make.wells(cold, gates)
+    assert verdicts(make, known, (1, claim(lowest=4000.0))) == ["pass"]
+    assert verdicts(make, make.wells(cold), (1, claim(lowest=4000.0))) == ["fail"]
+
+
 def test_throughout_reaches_back_to_the_last_label(make):
     known = wells(make, 1.0, 5.0, 2.0, 9.0)
     bound = (3, claim(lowest=2.0, throughout=True))

@@ -226,14 +226,15 @@ def test_grid_reaches_eight_radii_beyond_the_stack():
     assert axis.step_m <= stack.radius_m / 22
 
 
-def test_gap_error_grows_with_the_gap():
-    def of(gap):
-        return gap_error(stack_of(stand([(0.0, 1.0), (1.0 + gap, 2.0)]).electrodes))[0]
+def test_gap_error_comes_from_other_edges_and_falls_as_the_square_of_the_gap():
+    def of(gap, length=1.0):
+        edges = [(0.0, length), (length + gap, 2 * length + gap)]
+        return gap_error(stack_of(stand(edges).electrodes))[0]
 
     assert of(0.0) == 0.0
-    # Finite elements of real slots: 2.1e-6 at 0.1 a, 1.5e-5 at 0.2 a.
-    assert 2.1e-6 < of(0.1) < 1e-5
-    assert 1.5e-5 < of(0.2) < 5e-5
+    assert of(0.1) / of(0.05) == pytest.approx(4.0, rel=0.1)
+    # A gap far from every other edge: 1e-3 (g/a)^3 for each of its sides remains.
+    assert of(0.1, 20.0) == pytest.approx(1e-6, rel=1e-3)
 
 
 @pytest.mark.parametrize(

@@ -6,6 +6,8 @@ import os
 
 import pytest
 
+from wellseq.model.library import USES_MAX
+
 USING = 'wellseq 1\ntrap "sandpit.trap.toml"\nuse "{}"\nsequence run {{ {} }}\n'
 GATES = """wellseq 1
 let height = 60 V
@@ -179,6 +181,15 @@ def test_files_use_files_sixteen_deep_and_no_deeper(bench):
     bench.write("f17.well", "wellseq 1\n")
     built = bench.build(USING.format("f1.well", "hold for l1"))
     assert [(name, file) for name, file, _ in told(built)] == [("import-refused", "f16.well")]
+
+
+def test_a_file_uses_so_many_others_and_no_more(bench):
+    bench.write("a.well", "wellseq 1\nlet span = 1 s\n")
+    text = USING.format("a.well", "hold for span")
+    fine = text.replace("sequence", 'use "a.well"; ' * (USES_MAX - 1) + "\nsequence")
+    assert told(bench.build(fine)) == []
+    more = text.replace("sequence", 'use "a.well"; ' * USES_MAX + "\nsequence")
+    assert [name for name, _, _ in told(bench.build(more))] == ["import-refused"]
 
 
 def test_a_used_file_is_for_the_same_trap_or_says_nothing(bench):

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from wellseq.base.finding import Mistake
 from wellseq.base.place import Place
-from wellseq.model.reporter import COMPARISONS_MAX, LISTED_MAX, Reporter
+from wellseq.model.reporter import COMPARISONS_MAX, KEPT_MAX, LISTED_MAX, Reporter
 
 
 def at(file: str, line: int, message: str = "wrong") -> Mistake:
@@ -38,6 +38,14 @@ def test_beyond_a_hundred_only_their_number_is_told():
     for line in range(LISTED_MAX):
         fewer.add(at("a", line + 1))
     assert len(fewer.listed(["a"])) == LISTED_MAX
+
+
+def test_of_very_many_mistakes_the_number_is_a_least_one():
+    reporter = Reporter()
+    for line in range(KEPT_MAX + 50):
+        reporter.add(at("a", line + 1))
+    message = f"at least {KEPT_MAX - LISTED_MAX} more mistakes in this file are not listed"
+    assert reporter.listed(["a"])[-1].message == message
 
 
 def test_the_nearest_name_is_looked_for_while_it_costs_little():

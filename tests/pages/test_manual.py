@@ -38,7 +38,7 @@ SHOWN = {f"line {one.line}": one for one in examples(PAGE)}
 
 
 def section(heading: str, page: str = PAGE) -> str:
-    """The text under one heading, up to the next of any level; headings begin with what is given."""
+    """The text under the heading that begins so, up to the next heading of any level."""
     found = re.search(rf"^#+ {re.escape(heading)}.*?$(.*?)(?=^#|\Z)", page, re.M | re.S)
     assert found, heading
     return found[1]
@@ -142,6 +142,7 @@ def test_the_limits_are_those_of_the_code() -> None:
         "steps played by a sequence": str(plan.STEPS_MAX),
         "passes of one `repeat`": str(plan.STEPS_MAX),
         "files that use files": f"{library.DEPTH_MAX} deep",
+        "files used by one file": str(library.USES_MAX),
         "one step": "1e7 s",
         "digits of a number": str(DIGITS_MAX),
         "exponent of a number": str(EXPONENT_MAX),
@@ -159,8 +160,8 @@ def test_the_figures_in_the_sentences_are_those_of_the_code() -> None:
     assert NOISE_RMS_TAKEN == 6.0
     assert f"to {EVAPORATION_FLOOR_SHARE:g} U" in depth
     assert depth.count(f"{ENERGY_KEPT_SHARE:g}") == 2
-    assert "flatter than 1 mV or a twentieth of its depth" in depth
-    assert (RIPPLE_V, RIPPLE_SHARE) == (1e-3, 1 / 20)
+    assert "flatter than 1 mV or a tenth of its depth" in depth
+    assert (RIPPLE_V, RIPPLE_SHARE) == (1e-3, 1 / 10)
     assert PATCH_LIMIT.value == 1.0
     assert "A floor below 1 V" in depth.replace("**", "")
 
@@ -232,7 +233,7 @@ def _is_default(model: Any, least: dict[str, Any], key: str, default: str) -> bo
         return False
     if written[0] == "[]":
         return bool(model.model_fields[_field(model, key)].default == ())
-    value = {"true": True, "false": False}.get(written[0])
+    value: Any = {"true": True, "false": False}.get(written[0])
     if value is None:
         value = written[0].strip('"') if written[0].startswith('"') else int(written[0])
     bare = {name: given for name, given in least.items() if name != key or name == "kind"}
@@ -241,7 +242,8 @@ def _is_default(model: Any, least: dict[str, Any], key: str, default: str) -> bo
 
 
 def _field(model: Any, key: str) -> str:
-    return next(n for n, info in model.model_fields.items() if key in (n, info.alias))
+    fields: dict[str, Any] = model.model_fields
+    return next(name for name, info in fields.items() if key in (name, info.alias))
 
 
 @pytest.mark.parametrize("heading", LEAST)

@@ -1,4 +1,4 @@
-"""The sequences that come with the house are clear: nothing stands between them and their tables."""
+"""The sequences that come with the house are clear: nothing stands between them and a table."""
 
 from __future__ import annotations
 

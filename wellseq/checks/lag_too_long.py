@@ -11,6 +11,7 @@ from wellseq.checks.keeping import numbered, telling
 from wellseq.checks.pieces import durations_s
 from wellseq.checks.written import mistakes_named
 from wellseq.model.trap import Converter
+from wellseq.timeline.timeline import Shape
 
 SAYS = "An output's filter and delay take too long a share of the time in which it moves."
 NEEDS = ("trap", "timeline")
@@ -29,7 +30,8 @@ def read(case: Case) -> Iterator[Reading | Mistake]:
         if isinstance(output, Converter)
     }
     for block in reached(case.timeline).blocks:
-        pieces = block.pieces
+        # An edge is as fast as its output can be; its lag is counted in its window.
+        pieces = [piece for piece in block.pieces if piece.shape is not Shape.EDGE]
         values = [lags[piece.output] for piece in pieces]
         bounds = durations_s(pieces, SHARE)
         groups = numbered(piece.output for piece in pieces)

@@ -161,9 +161,12 @@ class _Measured:
 
     @cached_property
     def _held(self) -> dict[str, list[Held]]:
+        # A bunch that has no temperature yet is held by its gates, whatever well it will settle in.
+        hot = {(one.cloud, one.block, one.number) for one in self.wells.held if one.energetic}
         held: dict[str, list[Held]] = {}
         for one in sorted(self.wells.held, key=lambda one: (one.block, one.start_s, one.end_s)):
-            held.setdefault(one.cloud, []).append(one)
+            if one.energetic or (one.cloud, one.block, one.number) not in hot:
+                held.setdefault(one.cloud, []).append(one)
         return held
 
     # separation

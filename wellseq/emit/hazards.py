@@ -102,7 +102,7 @@ def _course(
 
 
 def _windows(shipped: Shipped, courses: list[Floats], holds: bool) -> Windows:
-    """(block index, start, end) of every stretch above TOUCH_V, row to row, rounded outwards."""
+    """(block index, start, end) of every stretch above TOUCH_V, row to row."""
     found: Windows = []
     for block, volts in zip(shipped.blocks, courses, strict=True):
         seconds = block.ticks * float(block.tick_s)

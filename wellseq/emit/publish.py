@@ -84,7 +84,8 @@ def _fill(folder: Path, cleared: Cleared) -> None:
     for path, pieces in contents(cleared):
         if path in written:
             raise ValueError(f"two files want the name {path}")
-        (folder / path).parent.mkdir(parents=True, exist_ok=True)
+        if not (folder / path).parent.is_dir():
+            (folder / path).parent.mkdir(parents=True)
         written[path] = _write(folder / path, pieces)
     _write(folder / MANIFEST, [manifest(cleared, written)])
     for inner in sorted(file for file in folder.rglob("*") if file.is_dir()):

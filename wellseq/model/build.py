@@ -11,7 +11,7 @@ from fractions import Fraction
 from pathlib import Path
 
 from wellseq.base.finding import Mistake
-from wellseq.base.names import normal, printable
+from wellseq.base.names import nearest, normal, printable
 from wellseq.base.place import Place
 from wellseq.model.declare import declare
 from wellseq.model.expand import Expansion
@@ -214,11 +214,11 @@ class _Build:
             self._unused(scope)
 
     def _unused(self, scope: FileScope) -> None:
-        used = names_in(self.tree.statements)
+        used, hints = names_in(self.tree.statements), self.reporter.hints()
         for item in scope.own("let", "pattern", "procedure", "cloud"):
             if item.place is None or item.name in used:
                 continue
-            if not self.reporter.suggests(item.name):  # else it is used, and misspelt there
+            if nearest(item.name, (item.name,)) not in hints:  # else it is used, and misspelt
                 message = f"nothing uses {SORTS[item.sort].split()[1]} '{printable(item.name)}'"
                 self.reporter.add(Mistake("name-unused", item.place, message, "leave it out"))
 

@@ -73,10 +73,10 @@ def _parameters(scope: FileScope, call: Call) -> list[Name]:
 
 
 def _check_parameters(scope: FileScope, procedure: Defined) -> None:
-    before: list[str] = []
+    before: set[str] = set()
     for parameter in procedure.parameters:
         scope.free(parameter, "an argument", before)
-        before.append(parameter.text)
+        before.add(parameter.text)
 
 
 def _value(written: Operand, name: str, names: Names, replaced: Mapping[str, str]) -> Value:

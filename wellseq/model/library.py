@@ -26,6 +26,8 @@ from wellseq.text.tree import String
 
 DEPTH_MAX = 16
 """How far files may use files that use files."""
+USES_MAX = 256
+"""The most `use` statements of one file."""
 BROUGHT = ("let", "pattern", "procedure")
 
 
@@ -66,9 +68,18 @@ class Library:
 
     def bring_all(self, header: Header, scope: FileScope, chain: Chain) -> None:
         """Open every file that a header uses and enter its names into the scope."""
-        for use in header.uses:
+        if len(header.uses) > USES_MAX:
+            place = header.uses[USES_MAX].place
+            self._refuse(
+                place, f"a file uses at most {USES_MAX} others; this and more are left out"
+            )
+        brought: set[FileScope] = set()
+        for use in header.uses[:USES_MAX]:
             there = self._open(use, chain)
-            for item in there.own(*BROUGHT) if there is not None else ():
+            if there is None or there in brought:
+                continue
+            brought.add(there)
+            for item in there.own(*BROUGHT):
                 scope.bring(item, use.place)
 
     def _refuse(self, place: Place, message: str, hint: str = "") -> None:

@@ -120,7 +120,7 @@ def _named(sort: str) -> Callable[[Slot, tuple[Operand, ...], Names, Chosen], ob
 def _electrodes(
     slot: Slot, operands: tuple[Operand, ...], names: Names, chosen: Chosen
 ) -> tuple[str, ...] | Unknown:
-    listed: list[str] = []
+    listed: dict[str, None] = {}
     sound = True
     for operand in operands:
         found = electrodes(operand, names)
@@ -129,7 +129,7 @@ def _electrodes(
             if name in listed:
                 names.report("name-reused", operand.place, f"'{name}' is given twice here")
                 sound = False
-            listed.append(name)
+            listed[name] = None
     return tuple(listed) if sound else UNKNOWN
 
 

@@ -31,15 +31,18 @@ class Reporter:
             key = (mistake.name, mistake.place, mistake.message)
             self._found.setdefault(key, mistake)
 
+    def may_compare(self, count: int) -> bool:
+        """Whether so many names may still be compared with one that is not known."""
+        self._comparisons += count
+        return self._comparisons <= COMPARISONS_MAX
+
     def near(self, name: str, known: Collection[str], what: str) -> str:
         """A hint that offers the nearest known name, while looking for it costs little."""
-        self._comparisons += len(known)
-        return nearest(name, known, what) if self._comparisons <= COMPARISONS_MAX else ""
+        return nearest(name, known, what) if self.may_compare(len(known)) else ""
 
-    def suggests(self, name: str) -> bool:
-        """Whether a mistake may be a misspelling of this name."""
-        hint = nearest(name, (name,))
-        return any(mistake.hint == hint for mistake in self._found.values())
+    def hints(self) -> frozenset[str]:
+        """What the mistakes so far were answered with."""
+        return frozenset(mistake.hint for mistake in self._found.values())
 
     def listed(self, files: Sequence[str]) -> tuple[Mistake, ...]:
         """Mistakes in the order of these files (others after them) and of their places.
@@ -56,7 +59,8 @@ class Reporter:
             result += met[:LISTED_MAX]
             left = len(met) - LISTED_MAX
             if left > 0:
-                message = f"{left} more mistakes in this file are not listed"
+                count = f"at least {left}" if len(self._found) >= KEPT_MAX else str(left)
+                message = f"{count} more mistakes in this file are not listed"
                 place = met[LISTED_MAX].place
                 result.append(Mistake("syntax", place, message, "mend the first ones first"))
         return tuple(result)

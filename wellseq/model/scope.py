@@ -9,7 +9,7 @@ from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import dataclass, field
 
 from wellseq.base.finding import Mistake, Origin
-from wellseq.base.names import RESERVED, printable
+from wellseq.base.names import RESERVED, nearest, printable
 from wellseq.base.place import Place
 from wellseq.base.quantity import Quantity, QuantityError, Spread, unit_of
 from wellseq.model.reporter import Reporter
@@ -245,9 +245,11 @@ class Names:
     def _unknown(self, name: Name, sorts: tuple[str, ...], what: str) -> Unknown:
         if self.trap is None and any(sort in HARDWARE for sort in sorts):
             return UNKNOWN
-        meant = {**self.scope.known, **self.local}
-        known = [key for key, item in meant.items() if _sort(item) in sorts]
-        near = self.scope.reporter.near(name.text, known, " or ".join(sorts))
+        near = ""
+        if self.scope.reporter.may_compare(len(self.scope.known)):
+            meant = {**self.scope.known, **self.local}
+            known = [key for key, item in meant.items() if _sort(item) in sorts]
+            near = nearest(name.text, known, " or ".join(sorts))
         return self.report(
             "unknown-name", name.place, f"'{printable(name.text)}' is not known as {what}", near
         )
