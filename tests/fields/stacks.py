@@ -1,4 +1,4 @@
-"""Small traps for the tests of the fields, and ways to know a potential that share no code with it."""
+"""Small traps for the tests of the fields, and the residue series that shares no code with them."""
 
 from __future__ import annotations
 

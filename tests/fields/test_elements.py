@@ -1,8 +1,8 @@
 """Real gaps against finite elements that know no linear gap.
 
-Axisymmetric Laplace, quadratic elements on a mesh graded towards the corners; every gap is a slot 1.5
-times as deep as wide between thick electrodes, its mouth field is part of the solution.  Lengths in
-bore radii.
+Axisymmetric Laplace, quadratic elements on a mesh graded towards the corners; every gap is a slot
+1.5 times as deep as wide between thick electrodes, its mouth field part of the solution.  Lengths
+in bore radii.
 """
 
 from functools import cache
@@ -89,7 +89,7 @@ def solved(edges, factor=uniform.GAP_FACTOR):
 
 
 def worst_of_stack(gap, shift=0.0, factor=uniform.GAP_FACTOR):
-    """Greatest error (V/V) on the axis for each of the three inner electrodes of the whole stack."""
+    """Greatest error (V/V) on the axis for each of the three inner electrodes."""
     truth = [elements(whole(gap), tuple(row), True) for row in np.eye(5)[1:4]]
     return np.abs(solved(whole(gap, shift), factor)[1:4] - truth).max(axis=1)
 

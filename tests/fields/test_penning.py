@@ -3,9 +3,9 @@
 Geometry in units of z0: gapless ring of half-length z0 - dzc, compensation rings of length dzc,
 endcaps of length ze, bore rho0.  phi = (V0/2) sum C_k (r/d)^k P_k(cos), C_k = C_k(0) + D_k Vc/V0,
 d^2 = (z0^2 + rho0^2/2)/2; ring at -V0/2, endcaps at +V0/2, compensation at Vc.
-Source: Open-endcap Penning traps for high precision experiments, Int. J. Mass Spectrom. Ion Processes
-88, 319 (1989) (values from memory).  There the outer ends are grounded planes; here the wall is
-continued by its odd reflection in them, which is the same thing.
+Source: Open-endcap Penning traps for high precision experiments, Int. J. Mass Spectrom. Ion
+Processes 88, 319 (1989) (values from memory).  There the outer ends are grounded planes; here the
+wall is continued by its odd reflection in them, which is the same thing.
 """
 
 from math import factorial, pi
@@ -48,7 +48,8 @@ def series(rho0=RHO0, dzc=DZC, ze=ZE, terms=90):
     result = []
     for wall in (wall_base, wall_comp):
         moments = [(-1) ** (m // 2) * np.sum(wall * fall * k**m) for m in (2, 4, 6)]
-        result.append(np.array([2 * D**m / factorial(m) * x for m, x in zip((2, 4, 6), moments, strict=True)]))  # fmt: skip
+        scale = [2 * D**m / factorial(m) for m in (2, 4, 6)]
+        result.append(np.array(moments) * scale)
     return result
 
 
@@ -64,12 +65,13 @@ def series(rho0=RHO0, dzc=DZC, ze=ZE, terms=90):
     ],
 )
 def test_published_coefficients(name, printed, tolerance):
-    found = dict(zip(("C2", "C4", "C6", "D2", "D4", "D6"), np.concatenate(coefficients()), strict=True))
+    names = ("C2", "C4", "C6", "D2", "D4", "D6")
+    found = dict(zip(names, np.concatenate(coefficients()), strict=True))
     assert found[name] == pytest.approx(printed, abs=tolerance)
 
 
 def test_published_coefficients_tell_one_trap_from_another():
-    # A ring thinner by a fiftieth: four of the six printed values no longer hold.
+    # Compensation rings longer by a hundredth: four of the six printed values no longer hold.
     wrong = np.concatenate(coefficients(dzc=DZC * 1.01))
     printed = np.array([0.5449, -0.2119, 0.1638, 0.0, -0.556, 0.430])
     assert (np.abs(wrong - printed) > [0.0003, 0.0012, 0.0015, 0.001, 0.0015, 0.0015]).sum() >= 4
@@ -93,4 +95,6 @@ def test_one_compensation_nulls_two_orders():
     assert v4 == pytest.approx(-0.3806, abs=0.001)
     assert v6 / v4 == pytest.approx(1.0, abs=0.001)
     other = coefficients(dzc=DZC * 1.01)
-    assert (other[0][2] / other[1][2]) / (other[0][1] / other[1][1]) != pytest.approx(1.0, abs=0.001)
+    assert (other[0][2] / other[1][2]) / (other[0][1] / other[1][1]) != pytest.approx(
+        1.0, abs=0.001
+    )

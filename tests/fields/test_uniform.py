@@ -35,7 +35,9 @@ def potentials(edges, points, radii=(0.0,), orders=(0,), radius=1.0):
 
 def step_derivative(order, z, radius=1.0, height=1.0):
     """A unit step at 0: an electrode so long that its other edge is not felt."""
-    return height * float(potentials([(0.0, FAR)], [z, z + 0.01], (0.0,), (order,), radius)[0, 0, 0, 0])
+    return height * float(
+        potentials([(0.0, FAR)], [z, z + 0.01], (0.0,), (order,), radius)[0, 0, 0, 0]
+    )
 
 
 @pytest.mark.parametrize(
@@ -69,8 +71,8 @@ def test_against_the_fourier_integral_in_high_precision(z, r, gap):
 
 
 def test_slope_at_a_gapless_edge():
-    # A01. w = (2/pi) Int dx/I0(x) = 1.32623, dphi/dz = (V2 - V1) w/(2R): exact (derived); printed fit
-    # 1.318: Electrostatic electron-optics, Bell Syst. Tech. J. 18, 1 (1939).
+    # A01. w = (2/pi) Int dx/I0(x) = 1.32623, dphi/dz = (V2 - V1) w/(2R): exact (derived); printed
+    # fit 1.318: Electrostatic electron-optics, Bell Syst. Tech. J. 18, 1 (1939).
     assert 2 * step_derivative(1, 0.0) == pytest.approx(1.32623, abs=1e-5)
     assert 2 * step_derivative(1, 0.0, radius=1.001) != pytest.approx(1.32623, abs=1e-5)
 
@@ -83,8 +85,8 @@ def lens_error(w, height=1.0):
 
 
 def test_hyperbolic_tangent_of_the_two_tube_lens():
-    # A02, A03. tanh(1.318 z/R) is good to 0.0035 of V2 - V1; the best constant is 1.3047 (derived);
-    # J. Appl. Phys. 13, 496 (1942) for the fit.
+    # A02, A03. tanh(1.318 z/R) is good to 0.0035 of V2 - V1; the best constant is 1.3047
+    # (derived); the fit: J. Appl. Phys. 13, 496 (1942).
     assert lens_error(1.318) == pytest.approx(0.00348675, abs=1e-6)
     assert lens_error(1.318) <= 0.0036
     assert lens_error(1.318, height=0.999) > 0.0036
@@ -125,8 +127,8 @@ def centre_of_can(length, images=14):
 
 
 def test_closed_can_by_reflection():
-    # A26. Can of length 2a: one end at 1 V gives 0.139337 at the centre, the side 0.721326; twice the
-    # first and the second are 1 (exact): Classical Electrodynamics, 3rd ed., sec. 3.8 (method).
+    # A26. Can of length 2a: one end at 1 V gives 0.139337 at the centre, the side 0.721326; twice
+    # the first and the second are 1: Classical Electrodynamics, 3rd ed., sec. 3.8 (method).
     assert centre_of_can(2.0) == pytest.approx(1.0 - 2 * 0.139337, abs=2e-6)
     assert centre_of_can(2.002) != pytest.approx(1.0 - 2 * 0.139337, abs=1e-4)
 

@@ -1,4 +1,4 @@
-"""A seeded source → damaged files: what tired fingers, broken disks and ill will make of good ones."""
+"""A seeded source → damaged files: what tired fingers, broken disks and ill will make of them."""
 
 from __future__ import annotations
 
@@ -73,23 +73,71 @@ procedure settle(time) { hold for time }
 """
 HOSTILE = (
     *(b"1e400 V", b"1e-400 V", b"1e40 V", b"9" * 5000, b"0" * 3000 + b"1 V", b"1e999999999"),
-    *(b"(" * 2000, b"{" * 300, b"}" * 300, b"[" * 2000, b"{ lane " * 70, b"- " * 500, b"5 V + " * 400),
+    *(
+        b"(" * 2000,
+        b"{" * 300,
+        b"}" * 300,
+        b"[" * 2000,
+        b"{ lane " * 70,
+        b"- " * 500,
+        b"5 V + " * 400,
+    ),
     *(b"repeat 1000000000 {", b"repeat 1e12 { repeat 1e12 {", b"repeat 99999 { repeat 99999 {"),
-    *(b"repeat 0 {", b"repeat -3 {", b"repeat 2.5 {", b"each x of 1 V {", b"alongside {", b"lane {"),
+    *(
+        b"repeat 0 {",
+        b"repeat -3 {",
+        b"repeat 2.5 {",
+        b"each x of 1 V {",
+        b"alongside {",
+        b"lane {",
+    ),
     *(b"\0", b"\xed\xa0\x80", b"\xff", b"\xc3", b"\xef\xbb\xbf", b"\xf4\x90\x80\x80", b"\x1b[31m"),
     *("\u202e".encode(), "\u2028".encode(), "\u0085".encode(), b"\x0c", b"\x0b", b"\r", b"\n\n\n"),
     *("٣".encode(), "１２ V".encode(), "e\u0301".encode(), "\u00b5s".encode(), "\u03bcs".encode()),
     *(b"a" * 10_000, "ä".encode() * 300, b"1_000 V", b"1,5 V", b"0x10 V", b"nan", b"inf", b"5 Vs"),
     *(b"5 volt", b"5 kv", b"3 usec", b"4 V/sec", b"2 m/s/s", b"1 / 0", b"0 V", b"0 s", b"-5 s"),
-    *(b'"', b'""', b"#", b"..", b"C3..C1", b"C1..", b"= =", b"others", b"keep", b"+- 3 V", b"\xb1 3 V"),
+    *(
+        b'"',
+        b'""',
+        b"#",
+        b"..",
+        b"C3..C1",
+        b"C1..",
+        b"= =",
+        b"others",
+        b"keep",
+        b"+- 3 V",
+        b"\xb1 3 V",
+    ),
     *(b'use "good.well"', b'use "../x.well"', b'use "/dev/zero"', b'trap "/dev/zero"', b'trap "."'),
     *(b'use "run.well"', b'trap "good.well"', b'use "missing.well"', b'use "bench.trap.toml"'),
-    *(b"do settle(1 s)", b"do lift(lift)", b"do lift", b"procedure p() { do p() }", b"sequence x {"),
+    *(
+        b"do settle(1 s)",
+        b"do lift(lift)",
+        b"do lift",
+        b"procedure p() { do p() }",
+        b"sequence x {",
+    ),
     *(b"allow lag-too-long", b"because", b"is", b"let s = 5 V", b"let C1 = 5 V", b"wellseq 2"),
     *(b"const", b"hold for 1e9 s", b"hold for 1 fs", b"ramp {} over 1 s", b"set valve wide"),
     *(b"[[electrode]]", b"[bore]", b"a." * 400 + b"b = 1", b"x = 1979-05-27T07:32:00Z", b"= true"),
-    *(b'"""', b"'''", b"{ a = 1 }", b"= [1, [2, [3]]]", b"= nan", b"= 1e999", b"= -0x1p3", b'= "5"'),
-    *(b'name = "C1"', b'output = "nobody"', b"sectors = 5", b'range = ["5 V", "-5 V"]', b"bits = 99"),
+    *(
+        b'"""',
+        b"'''",
+        b"{ a = 1 }",
+        b"= [1, [2, [3]]]",
+        b"= nan",
+        b"= 1e999",
+        b"= -0x1p3",
+        b'= "5"',
+    ),
+    *(
+        b'name = "C1"',
+        b'output = "nobody"',
+        b"sectors = 5",
+        b'range = ["5 V", "-5 V"]',
+        b"bits = 99",
+    ),
     *(b'clock = "1e-30 s"', b'slew = "0 V/us"', b'from = "NaN mm"', b'levels = ["a1", "a1"]'),
 )
 """Things that have no place in a good file, or not there."""

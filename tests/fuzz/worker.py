@@ -13,10 +13,12 @@ import sys
 import tempfile
 import time
 import traceback
-from collections.abc import Callable, Iterable
+from collections.abc import Callable, Iterable, Iterator
+from dataclasses import dataclass, replace
 from functools import cache
 from pathlib import Path
 
+from monsters import monsters
 from mutations import BENCH, GOOD, SEQUENCES, mutated
 
 from wellseq.base.finding import Mistake
@@ -38,25 +40,44 @@ def place_fault(place: Place, texts: Texts) -> str:
     lines = re.split(r"\r\n|\n|\r", text)
     start, end = (place.line, place.column), (place.end_line, place.end_column)
     for line, column in (start, end):
-        if not 1 <= line <= len(lines) or not 1 <= column <= len(lines[line - 1]) + 1:
-            return f"{line}:{column} of {place} is outside the file"
+        if not 1 <= line <= len(lines):
+            return f"line {line} of {place} is outside the file"
+        line_end = line < len(lines) and start < end == (
+            line,
+            column,
+        )  # the end of a line may be meant
+        if not 1 <= column <= len(lines[line - 1]) + 1 + line_end:
+            return f"{line}:{column} of {place} is outside its line"
     return f"{place} ends before it begins" if end < start else ""
 
 
-def examine(call: Callable[[], Outcome], texts: Texts, seconds_max: float = SECONDS_MAX) -> str:
-    """What is at fault with one call; empty when it ended as it should."""
+@dataclass(frozen=True)
+class Examined:
+    """What came of one file: its fault (empty when there is none), CPU seconds, sound or not."""
+
+    fault: str
+    spent_s: float
+    sound: bool = False
+
+
+def examine(
+    call: Callable[[], Outcome], texts: Texts, seconds_max: float = SECONDS_MAX
+) -> Examined:
+    """Call, and see that it ends in time, with a sound file or with a place that is inside it."""
     start = time.process_time()
     try:
         sound, places = call()
         places = list(places)
     except BaseException as error:
-        return f"{type(error).__name__}: {traceback.format_exc(limit=-3)}"
-    spent = time.process_time() - start
-    if spent > seconds_max:
-        return f"took {spent:.1f} s"
+        fault = f"{type(error).__name__}: {traceback.format_exc(limit=-3)}"
+        return Examined(fault, time.process_time() - start)
+    spent_s = time.process_time() - start
+    if spent_s > seconds_max:
+        return Examined(f"took {spent_s:.1f} s", spent_s)
     if not sound and not places:
-        return "not sound, and nothing says why"
-    return next(filter(None, (place_fault(place, texts) for place in places)), "")
+        return Examined("not sound, and nothing says why", spent_s)
+    fault = next(filter(None, (place_fault(place, texts) for place in places)), "")
+    return Examined(fault, spent_s, sound)
 
 
 def sequence_outcome(data: bytes, path: Path) -> Outcome:
@@ -73,11 +94,14 @@ def sequence_outcome(data: bytes, path: Path) -> Outcome:
 
 
 def trap_outcome(data: bytes, path: Path) -> Outcome:
-    """A trap file."""
-    from wellseq.model.trap_file import read_trap
+    """A trap file; only what is no UTF-8 is read from the disk."""
+    from wellseq.model.trap_file import read_trap, trap_from
 
-    path.write_bytes(data)
-    trap, mistakes = read_trap(path, path.name)
+    try:
+        trap, mistakes = trap_from(data.decode("utf-8"), path.name)
+    except UnicodeDecodeError:
+        path.write_bytes(data)
+        trap, mistakes = read_trap(path, path.name)
     assert (trap is None) == bool(mistakes)
     return trap is not None, [mistake.place for mistake in mistakes]
 
@@ -97,47 +121,43 @@ def check_outcome(data: bytes, path: Path) -> Outcome:
 def _renamed(place: Place, name: str, folder: str) -> Place:
     """The same place, in a file named without its folder."""
     assert place.file.startswith(folder), (place, name)
-    return Place(place.file.removeprefix(folder), *place_numbers(place))
+    return replace(place, file=place.file.removeprefix(folder))
 
 
-def place_numbers(place: Place) -> tuple[int, int, int, int]:
-    """Line, column, end line, end column."""
-    return place.line, place.column, place.end_line, place.end_column
+OUTCOMES = {"sequence": sequence_outcome, "check": check_outcome}
 
 
-def damaged(stage: str, number: int) -> bytes:
-    """The damaged file of a stage."""
-    return mutated(number, (BENCH,) if stage == "trap" else SEQUENCES)
+def files_of(stage: str, first: int, last: int) -> Iterator[tuple[str, bool, bytes]]:
+    """Name, whether it is a trap file, and content of the files of a stage."""
+    if stage == "monsters":
+        for name, (is_trap, data) in list(monsters().items())[first:last]:
+            yield name, is_trap, data
+        return
+    bases = (BENCH,) if stage == "trap" else SEQUENCES
+    for number in range(first, last):
+        yield f"{stage} {number}", stage == "trap", mutated(number, bases)
 
 
-def run(stage: str, numbers: Iterable[int], folder: Path) -> dict:
-    """Examine the damaged files of a stage."""
+def run(stage: str, first: int, last: int, folder: Path) -> dict:
+    """Examine the files of a stage from the first up to, not including, the last."""
     from wellseq.model import build as model
 
     (folder / "bench.trap.toml").write_bytes(BENCH)
     (folder / "good.well").write_bytes(GOOD)
-    outcome = {"sequence": sequence_outcome, "trap": trap_outcome, "check": check_outcome}[stage]
-    path = folder / ("run.well" if stage != "trap" else "damaged.trap.toml")
-    path.write_bytes(SEQUENCES[0])
+    (folder / "run.well").write_bytes(SEQUENCES[0])
     model.read_trap = cache(model.read_trap)  # the sound one, thousands of times
-    report = {"sound": 0, "mistaken": 0, "faults": [], "slowest_s": 0.0}
-    for number in numbers:
-        data = damaged(stage, number)
+    report = {"sound": 0, "mistaken": 0, "faults": [], "slowest_s": 0.0, "slowest": ""}
+    for name, is_trap, data in files_of(stage, first, last):
+        path = folder / ("damaged.trap.toml" if is_trap else "run.well")
+        outcome = trap_outcome if is_trap else OUTCOMES.get(stage, sequence_outcome)
         texts = {path.name: data, "bench.trap.toml": BENCH, "good.well": GOOD}
-        sound: list[bool] = []
-
-        def call(data: bytes = data, sound: list[bool] = sound) -> Outcome:
-            result = outcome(data, path)
-            sound.append(result[0])
-            return result
-
-        start = time.process_time()
-        fault = examine(call, texts)
-        report["slowest_s"] = max(report["slowest_s"], time.process_time() - start)
-        if fault:
-            report["faults"].append(f"{stage} {number}: {fault}")
+        examined = examine(lambda: outcome(data, path), texts)  # noqa: B023  called at once
+        if examined.spent_s > report["slowest_s"]:
+            report["slowest_s"], report["slowest"] = examined.spent_s, name
+        if examined.fault:
+            report["faults"].append(f"{name}: {examined.fault}")
         else:
-            report["sound" if sound[0] else "mistaken"] += 1
+            report["sound" if examined.sound else "mistaken"] += 1
     report["memory_bytes"] = resource.getrusage(resource.RUSAGE_SELF).ru_maxrss * 1024
     return report
 
@@ -155,7 +175,7 @@ def main(stage: str, first: str, last: str) -> None:
         import wellseq.pipeline  # noqa: F401  its libraries are no part of what a file costs
     bound_memory()
     with tempfile.TemporaryDirectory() as folder:
-        print(json.dumps(run(stage, range(int(first), int(last)), Path(folder))))
+        print(json.dumps(run(stage, int(first), int(last), Path(folder))))
 
 
 if __name__ == "__main__":

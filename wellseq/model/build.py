@@ -155,7 +155,13 @@ class _Build:
         return trap, Path(os.path.realpath(path))
 
     def _names(self, header: Header, trap: Trap | None, trap_path: Path | None) -> FileScope:
-        scope = FileScope(self.tree.file, trap, self.reporter)
+        scope = FileScope(
+            self.tree.file,
+            trap,
+            self.reporter,
+            unread=self.tree.unread,
+            spoilt=tuple(mistake.place for mistake in self.tree.mistakes),
+        )
         here = Path(os.path.realpath(self.path))
         root = trap_path.parent if trap_path is not None else here.parent
         library = Library(trap, trap_path, root, self.reporter, self.sources)

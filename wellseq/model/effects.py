@@ -71,7 +71,7 @@ class Acted:
 
 @dataclass(frozen=True, slots=True)
 class Assumed:
-    """A measured value stands for the cloud from here on: base units, half-width of its interval."""
+    """A measured value stands for the cloud from here on: base units, half-width included."""
 
     quantity: Quantity
     cloud: str

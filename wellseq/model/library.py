@@ -136,7 +136,10 @@ class Library:
             self.reporter.add(mistake)
         header = read_header(tree, self.reporter)
         self._same_trap(header, path)
-        scope = FileScope(shown, self.trap, self.reporter, used=True)
+        spoilt = tuple(mistake.place for mistake in tree.mistakes)
+        scope = FileScope(
+            shown, self.trap, self.reporter, used=True, unread=tree.unread, spoilt=spoilt
+        )
         self.bring_all(header, scope, Chain((*chain.paths, path), (*chain.shown, shown)))
         declare(scope, header, {})
         return scope

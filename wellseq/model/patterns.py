@@ -44,7 +44,9 @@ def settle(block: Block, names: Names) -> PatternVolts | Unknown:
             continue
         sound &= _assign(item, names, volts, others)
     if sound and not volts and not others:
-        names.report("syntax", block.place, "this pattern is empty", "'others = 0 V', for example")
+        if not names.scope.is_spoilt(block.place):
+            hint = "'others = 0 V', for example"
+            names.report("syntax", block.place, "this pattern is empty", hint)
         return UNKNOWN
     return PatternVolts(volts, others[0] if others else None) if sound else UNKNOWN
 

@@ -65,13 +65,17 @@ Bound = Value | Defined
 class FileScope:
     """The namespace of one file; `trap` is None when the trap file could not be read.
 
-    `used` tells a file that another one uses from the file that is read for its own sake.
+    `used` tells a file that another one uses from the file that is read for its own sake.  `unread`
+    are names whose definitions have mistakes of their own, `spoilt` the places of mistakes that
+    kept something out: nothing more is said of what follows from them.
     """
 
     file: str
     trap: Trap | None
     reporter: Reporter
     used: bool = False
+    unread: frozenset[str] = frozenset()
+    spoilt: tuple[Place, ...] = ()
     known: dict[str, Defined] = field(default_factory=dict)
 
     def __post_init__(self) -> None:
@@ -86,6 +90,10 @@ class FileScope:
         ):
             for part in parts:
                 self.known[part.name] = Defined(part.name, sort, self)
+
+    def is_spoilt(self, place: Place) -> bool:
+        """Whether something that stood within a place was kept out for a mistake of its own."""
+        return any(place.line <= one.line <= place.end_line for one in self.spoilt)
 
     def own(self, *sorts: str) -> Iterator[Defined]:
         """What this file itself defines of these sorts, in the order of the text."""
@@ -244,6 +252,8 @@ class Names:
 
     def _unknown(self, name: Name, sorts: tuple[str, ...], what: str) -> Unknown:
         if self.trap is None and any(sort in HARDWARE for sort in sorts):
+            return UNKNOWN
+        if name.text in self.scope.unread:
             return UNKNOWN
         near = ""
         if self.scope.reporter.may_compare(len(self.scope.known)):

@@ -70,8 +70,9 @@ class SourceFile:
 class Sequence:
     """What a file says to play.
 
-    `items` are in order of play.  `lets` are the values replaced on the command line.  `steps_written`
-    counts statements in the file that are steps; `mistakes` is empty for a sound text.
+    `items` are in order of play.  `lets` are the values replaced on the command line.
+    `steps_written` counts statements in the file that are steps; `mistakes` is empty for a sound
+    text.
     """
 
     name: str

@@ -32,14 +32,15 @@ def parse(source: str, file: str) -> Tree:
         mistakes.add("too-large", Place(file), f"the text has more than {SIZE_MAX} characters")
         return Tree(file, "", (), mistakes.listed())
     with _quiet_collector():
-        items, mistakes, unbalanced = _read(source, file, Repairs())
-        if unbalanced:
-            items, mistakes, _ = _read(source, file, repairs_by_layout(source))
-    return Tree(file, source, tuple(items), mistakes.listed())
+        splitter, mistakes = _read(source, file, Repairs())
+        if splitter.unbalanced:
+            splitter, mistakes = _read(source, file, repairs_by_layout(source))
+    items, unread = tuple(splitter.items), frozenset(splitter.unread)
+    return Tree(file, source, items, mistakes.listed(), unread)
 
 
-def _read(source: str, file: str, repairs: Repairs) -> tuple[list[Item], Mistakes, bool]:
-    """Statements, mistakes, and whether the braces do not match in a text read to its end."""
+def _read(source: str, file: str, repairs: Repairs) -> tuple[Splitter, Mistakes]:
+    """The statements of a text, and its mistakes."""
     mistakes = Mistakes(file)
     parser = statement_parser()
 
@@ -61,8 +62,8 @@ def _read(source: str, file: str, repairs: Repairs) -> tuple[list[Item], Mistake
     try:
         splitter.run(scan(source, mistakes))
     except ReadingStops:
-        return splitter.items, mistakes, False
-    return splitter.items, mistakes, splitter.unbalanced
+        splitter.unbalanced = False
+    return splitter, mistakes
 
 
 def _settle_words(tokens: list[Token]) -> None:

@@ -5,8 +5,9 @@ An explicit stack stands for the open braces, so that depth costs nothing and ca
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable
+from collections.abc import Callable, Iterable, Iterator
 
+from wellseq.base.names import normal
 from wellseq.text.braces import Repairs
 from wellseq.text.mistakes import Mistakes, ReadingStops
 from wellseq.text.tokens import OPERATORS, Token
@@ -16,6 +17,9 @@ NESTING_MAX = 64
 STATEMENT_LENGTH_MAX = 50_000
 OPERATORS_MAX = 64
 STRAYS_MAX = 64
+
+DEFINING = frozenset({"let", "cloud", "pattern", "procedure", "sequence"})
+"""Verbs that give a name to something."""
 
 Item = Statement | Assignment
 Reader = Callable[[list[Token]], Item | None]
@@ -41,12 +45,14 @@ class _Frame:
 class Splitter:
     """Gathers the statements of one file; after `run`, `items` are those that were read.
 
-    `unbalanced` says whether a brace lacked its partner.
+    `unbalanced` says whether a brace lacked its partner; `unread` are the names that statements
+    kept out would have defined.
     """
 
     def __init__(self, read: Reader, mistakes: Mistakes, repairs: Repairs) -> None:
         self.items: list[Item] = []
         self.unbalanced = False
+        self.unread: set[str] = set()
         self._read = read
         self._mistakes = mistakes
         self._repairs = repairs
@@ -218,10 +224,11 @@ class Splitter:
         if not tokens:
             return
         self._strays = 0
-        if spoiled or self._has_too_many_operators(tokens):
-            return
-        item = self._read(tokens)
+        item = None
+        if not spoiled and not self._has_too_many_operators(tokens):
+            item = self._read(tokens)
         if item is None:
+            self.unread.update(_defined(tokens))
             return
         if len(self._frames) == 1 and isinstance(item, Statement) and item.verb is None:
             place = item.clauses[0].word.place
@@ -243,6 +250,12 @@ class Splitter:
                 self._mistakes.add("too-large", token.place, message, "name a part of it with let")
                 return True
         return False
+
+
+def _defined(tokens: list[Token]) -> Iterator[str]:
+    """The name that a definition was to give, when the statement is one."""
+    if len(tokens) > 1 and tokens[0].value in DEFINING and tokens[1].type == "NAME":
+        yield normal(tokens[1].value)
 
 
 def _goes_on(tokens: list[Token], kind: str) -> bool:

@@ -149,12 +149,17 @@ class Statement:
 
 @dataclass(frozen=True, slots=True)
 class Tree:
-    """A whole file: its statements in order, and every mistake that kept a statement out."""
+    """A whole file: its statements in order, and every mistake that kept a statement out.
+
+    `unread` are the names that statements kept out would have defined: what they stand for is not
+    known, but that they are there is.
+    """
 
     file: str
     source: str
     statements: tuple[Statement | Assignment, ...]
     mistakes: tuple[Mistake, ...]
+    unread: frozenset[str] = frozenset()
 
     def lines(self) -> Iterator[str]:
         """The source line by line, without line ends (LF, CRLF, CR)."""

@@ -177,8 +177,7 @@ class Drawing:
         self, output: str, volts: float, duration_s: Fraction, shape: Shape = Shape.STRAIGHT
     ) -> None:
         """One converter output goes to `volts` from now on; the present instant stays."""
-        self.take("output", output)
-        if self.volts[output] != volts:
+        if self.take("output", output) and self.volts[output] != volts:
             self.draft.pieces.append(
                 Piece(
                     output,
@@ -228,10 +227,12 @@ class Drawing:
         sense: int,
     ) -> None:
         """Drive the sectors of a ring; sector k lags by its angle times the azimuthal order."""
-        self.take("ring", ring)
+        stop = self.now + duration_s
+        if not self.take("ring", ring):
+            self.now = stop
+            return
         sectors = self._trap.electrode(ring).sectors
         phases = tuple((-sense * order * 360.0 * k / sectors) % 360.0 for k in range(sectors))
-        stop = self.now + duration_s
         self.draft.drives.append(
             Drive(ring, self.now, stop, from_Hz, to_Hz, amplitude_V, order, phases, self.moment)
         )

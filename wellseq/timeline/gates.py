@@ -113,11 +113,11 @@ def _too_soon(drawing: Drawing, near: str, command: Fraction) -> bool:
 
 def _edge(drawing: Drawing, switch: Switch, index: int, command: Fraction) -> Fraction:
     """Record an edge and return when it is over; nothing moves when the level is there already."""
-    drawing.take("output", switch.name)
+    free = drawing.take("output", switch.name)
     start = command + switch.delay_s
     end = start + switch.edge_s * WHOLE_EDGE
     present = drawing.levels[switch.name]
-    if present != index:
+    if free and present != index:
         drawing.draft.edges.append(
             Edge(switch.name, command, start, end, present, index, drawing.moment)
         )

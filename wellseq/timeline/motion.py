@@ -17,12 +17,14 @@ from itertools import pairwise
 import numpy as np
 import numpy.typing as npt
 
-from wellseq.model.trap import Switch, Trap
+from wellseq.model.trap import Converter, Switch, Trap
 from wellseq.timeline.deviations import Carry, Deviations
 from wellseq.timeline.shipped import ShippedBlock
 from wellseq.timeline.timeline import Block, Edge, Piece, Shape
 
 Vector = npt.NDArray[np.float64]
+SETTLED_TIME_CONSTANTS = 8
+"""After this many time constants a segment ends, so that what follows is judged without the lag."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -178,7 +180,7 @@ class _Walk:
     def walk(self) -> Iterator[Segment]:
         block = self.block
         windows = _windows(self.shipped)
-        times = _breakpoints(block, windows)
+        times = _breakpoints(self.trap, block, windows)
         pieces, edges, spans = list(block.pieces), list(zip(block.edges, windows, strict=True)), 0
         next_piece = next_edge = 0
         running: list[Piece] = []
@@ -302,10 +304,17 @@ def _windows(shipped: ShippedBlock) -> list[tuple[Fraction, Fraction]]:
     return found
 
 
-def _breakpoints(block: Block, windows: list[tuple[Fraction, Fraction]]) -> list[Fraction]:
+def _breakpoints(
+    trap: Trap, block: Block, windows: list[tuple[Fraction, Fraction]]
+) -> list[Fraction]:
     times = {Fraction(0), block.duration_s}
+    quiet: dict[Fraction, Fraction] = {}
     for piece in block.pieces:
         times.update((piece.start_s, piece.end_s))
+        settled = piece.end_s + _settling_s(trap.output(piece.output))
+        quiet[piece.end_s] = max(quiet.get(piece.end_s, settled), settled)
+    # What a motion leaves behind must not weigh on all of a long hold after it.
+    times.update(settled for settled in quiet.values() if settled < block.duration_s)
     for start, end in windows:
         times.update((start, end))
     for event in block.events:
@@ -314,3 +323,11 @@ def _breakpoints(block: Block, windows: list[tuple[Fraction, Fraction]]) -> list
         times.update((span.start_s, span.end_s))
     ordered = sorted(times)
     return ordered if len(ordered) > 1 else [Fraction(0), Fraction(0)]
+
+
+def _settling_s(output: Converter | Switch) -> Fraction:
+    """How long after a motion rounding, delay and lag of its output still count, s."""
+    tail_s = output.clock_s + output.delay_s
+    if isinstance(output, Converter):
+        tail_s += SETTLED_TIME_CONSTANTS * output.time_constant_s
+    return tail_s

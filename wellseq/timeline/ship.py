@@ -132,9 +132,8 @@ class _Loading:
             late_s = abs(float(ticks[worst] - asked[worst] * per_clock) * float(self.tick_s))
             stray_V = abs(swing) / (2 * steps) + piece.slope_max_V_per_s * late_s
             self._stray(piece, stray_V, steps, int(ticks[0]), int(ticks[-1]))
-            emitted = int(ticks[worst]) * self.tick_s
-            exact = Fraction(float(asked[worst])) * clock
-            self.roundings.append(Rounding(piece.number, piece.output, exact, emitted))
+            self._round(piece, piece.start_s)
+            self._round(piece, piece.end_s)
 
     def _step_count(self, pieces: list[Piece], clock: Fraction) -> int:
         """Steps that keep every piece within the staircase, as far as clock and memory allow."""
