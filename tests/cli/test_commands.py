@@ -110,7 +110,9 @@ def test_a_build_is_verified_and_a_changed_byte_is_found(bench: Path, run: Run) 
 def test_the_folder_s_own_copies_compile_to_the_same_content(bench: Path, run: Run) -> None:
     run("build", "first.well", "-o", "out")
     run("build", "out/sources/first.well", "-o", "again")
-    one, two = (json.loads((bench / name / "manifest.json").read_text()) for name in ("out", "again"))
+    one, two = (
+        json.loads((bench / name / "manifest.json").read_text()) for name in ("out", "again")
+    )
     assert one["content_id"] == two["content_id"]
     assert one == two
 
@@ -244,7 +246,9 @@ def test_everything_that_verify_can_find_has_a_page(run: Run) -> None:
     for page in folder.glob("*.md"):
         text = page.read_text("utf-8")
         assert text.startswith(f"# {page.stem}\n")
-        assert all(f"**{part}.**" in text for part in ("What it says", "Why it matters", "What to do"))
+        assert all(
+            f"**{part}.**" in text for part in ("What it says", "Why it matters", "What to do")
+        )
 
 
 # the same from Python
@@ -264,7 +268,9 @@ def test_the_package_offers_the_same(bench: Path) -> None:
 
 def test_mistakes_are_values_in_python_too(bench: Path) -> None:
     spoil(bench, "ramp cradle", "ramp cradl")
-    assert [finding.name for finding in wellseq.compile_file("first.well").blocked] == ["unknown-name"]
+    assert [finding.name for finding in wellseq.compile_file("first.well").blocked] == [
+        "unknown-name"
+    ]
     wellseq.build("first.well", "out")
     assert not (bench / "out").exists()
     with pytest.raises(ValueError, match="nowhere"):

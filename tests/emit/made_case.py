@@ -166,9 +166,7 @@ def blocks() -> tuple[Block, ...]:
         ),
         edges=(),
         changes=(LineChange("shutter", Fraction(1, 3) * MILLI, "open", False, 0),),
-        drives=(
-            Drive("R3", MILLI, 3 * MILLI, 2e5, 1.6e6, 0.5, 1, (0.0, 270.0, 180.0, 90.0), 1),
-        ),
+        drives=(Drive("R3", MILLI, 3 * MILLI, 2e5, 1.6e6, 0.5, 1, (0.0, 270.0, 180.0, 90.0), 1),),
         events=(
             Event(
                 MILLI,

@@ -1,8 +1,8 @@
 """The cautions: what they must say, and that no name can act in them.
 
 60 V d.c. touchable in dry places: IEC 61140; IEC 60204-1, 6.4.  120 V d.c. ceiling of extra-low
-voltage: IEC 61140.  0.5 mT: ICNIRP, Health Phys. 96, 504 (2009).  19.5 % oxygen: 29 CFR 1910.146(b).
-Values as printed there, from memory.
+voltage: IEC 61140.  0.5 mT: ICNIRP, Health Phys. 96, 504 (2009).  19.5 % oxygen: 29 CFR
+1910.146(b).  Values as printed there, from memory.
 """
 
 from __future__ import annotations

@@ -108,7 +108,7 @@ def test_started_elsewhere_it_says_the_same() -> None:
         sources=sources,
     )
     there, here = document(elsewhere), document(case)
-    # The allowance's place names the moved file, and its step the old one, so only `covers` differs.
+    # The step's place names the file where it was, so that `covers` differs and is left out.
     assert [one["file"] for one in there["allowances"]] == ["night.well"]  # type: ignore[attr-defined]
     for read in (there, here):
         read.pop("digest")

@@ -108,7 +108,9 @@ def test_twenty_thousand_rows_of_thirty_outputs_are_quick() -> None:
     trap = case.trap.model_copy(
         update={"outputs": outputs, "electrodes": electrodes, "lines": (), "rest": ()}
     )
-    trap = type(trap).model_validate({name: getattr(trap, name) for name in type(trap).model_fields})
+    trap = type(trap).model_validate(
+        {name: getattr(trap, name) for name in type(trap).model_fields}
+    )
     codes = np.random.default_rng(4).integers(0, 65536, (rows, 30))
     none = np.zeros((rows, 0), np.int64)
     block = ShippedBlock(

@@ -1,4 +1,4 @@
-"""Bounds from supporting lines: exact minima of known convex functions, sound when stopped early."""
+"""Bounds from supporting lines: exact on known convex functions, sound when stopped early."""
 
 import numpy as np
 import pytest
@@ -44,7 +44,6 @@ def test_least_of_many_planes_against_linear_programming(count):
         value = (lines[:, 0] + lines[:, 1:] @ progress).max()
         assert value == pytest.approx(found.upper_V, abs=1e-12)
         inside += bool(((progress > 1e-6) & (progress < 1 - 1e-6)).any())
-        # A line left out of the oracle makes the bound wrong: the check can fail.
     assert inside > 15
 
 

@@ -23,8 +23,8 @@ from wellseq.base.place import Place
 
 WORKER = Path(__file__).with_name("worker.py")
 ROOT = Path(wellseq.__file__).parent.parent
-FRONT = (("sequence", 0, 5500), ("sequence", 5500, 11_000))
-TRAPS = (("trap", 0, 9500),)
+FRONT = (("sequence", 0, 4500), ("sequence", 4500, 9000))
+TRAPS = (("trap", 0, 11_200),)
 WHOLE = (("check", 0, 400), ("monsters", 0, 1000))
 SECONDS = 70
 MEMORY_BYTES = 512 * 2**20
@@ -81,7 +81,7 @@ def test_damaged_sequences_are_sound_or_say_what_is_wrong(tmp_path: Path) -> Non
 def test_traps_whole_checks_and_monsters_are_sound_or_say_what_is_wrong(tmp_path: Path) -> None:
     reports = _run([*TRAPS, *WHOLE], tmp_path)
     traps, checks, monsters = reports
-    _judge(reports, 9500 + 400 + monsters["sound"] + monsters["mistaken"])
+    _judge(reports, 11_200 + 400 + monsters["sound"] + monsters["mistaken"])
     assert traps["sound"] > 100
     assert checks["sound"] > 0
     assert monsters["mistaken"] > 40

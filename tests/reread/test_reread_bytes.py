@@ -9,6 +9,7 @@ import subprocess
 import sys
 from collections.abc import Callable
 from pathlib import Path
+from typing import Any
 
 import pytest
 from hypothesis import HealthCheck, given, settings
@@ -197,11 +198,18 @@ def test_no_import_of_the_second_reader_reaches_beyond_the_ground_floor() -> Non
 
 def test_the_second_reader_shares_no_code_with_the_writer() -> None:
     """It may import of wellseq nothing but the words of the ground floor, and of others nothing."""
+    root = str(Path(reread.__path__[0]).parents[1])
+    options: dict[str, Any] = {
+        "capture_output": True,
+        "text": True,
+        "check": True,
+        "env": {**os.environ, "PYTHONPATH": root},
+    }
     code = (
         "import sys; before = set(sys.modules); import wellseq.reread.folder; "
         "print(*sorted(set(sys.modules) - before))"
     )
-    run = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True)
+    run = subprocess.run([sys.executable, "-c", code], **options)
     loaded = run.stdout.split()
     ours = [name for name in loaded if name.startswith("wellseq.")]
     allowed = ("wellseq.base", "wellseq.reread", "wellseq.version")
@@ -211,5 +219,5 @@ def test_the_second_reader_shares_no_code_with_the_writer() -> None:
     assert outside == {"wellseq"}
     # The yardstick can fail: the writer does load what is forbidden here.
     writer = code.replace("reread.folder", "emit.publish")
-    run = subprocess.run([sys.executable, "-c", writer], capture_output=True, text=True, check=True)
+    run = subprocess.run([sys.executable, "-c", writer], **options)
     assert "numpy" in run.stdout.split()

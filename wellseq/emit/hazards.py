@@ -59,7 +59,7 @@ def hazards(trap: Trap, shipped: Shipped) -> list[Hazard]:
                 flagged=output.hazardous,
                 largest_V=largest,
                 able_V=able,
-                windows=_windows(shipped, courses, _holds(output)),
+                windows=_windows(shipped, courses, _holds(trap, output)),
                 stored_J=None if capacitance is None else capacitance * largest**2 / 2,
                 ends_V=tuple(float(volts[-1]) for volts in courses),
             )
@@ -78,8 +78,10 @@ def _level_able_V(trap: Trap, level: float | str) -> float:
     return able_V(trap, trap.output(level)) if isinstance(level, str) else abs(level)
 
 
-def _holds(output: Converter | Switch) -> bool:
-    return isinstance(output, Switch) or output.between_rows == "hold"
+def _holds(trap: Trap, output: Converter | Switch) -> bool:
+    if isinstance(output, Converter):
+        return output.between_rows == "hold"
+    return all(_holds(trap, trap.output(name)) for name in output.passes)
 
 
 def _course(
@@ -89,15 +91,16 @@ def _course(
     if isinstance(output, Converter):
         codes = block.codes[:, shipped.converters.index(output.name)]
         nominal = output.low_V + codes * output.code_V
-        return np.abs(output.gain * nominal + output.offset_V)
+        volts: Floats = np.abs(output.gain * nominal + output.offset_V)
+        return volts
     levels = block.levels[:, shipped.switches.index(output.name)]
-    volts = [
+    by_level = [
         _course(trap, shipped, block, trap.output(level))
         if isinstance(level, str)
         else np.full(len(levels), abs(level))
         for level in output.levels
     ]
-    chosen: Floats = np.choose(levels, volts)
+    chosen: Floats = np.choose(levels, by_level)
     return chosen
 
 

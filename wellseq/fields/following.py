@@ -108,7 +108,8 @@ def prove(
     corners holds in the box.  None when no core is proved: the caller cuts the piece in time.
     """
     vectors = [start, end, *corners]
-    if not all(np.isfinite(vector).all() for vector in (*vectors, deviation)):
+    known = (*vectors, deviation, np.array([z_start_m, ripple_V]))
+    if not all(np.isfinite(numbers).all() for numbers in known):
         return None
     curves = [field.curve(sign * vector) for vector in vectors]
     first = _slide(curves[0], z_start_m, ripple_V)

@@ -23,6 +23,8 @@ from wellseq.timeline.timeline import Piece, Shape
 Vector = npt.NDArray[np.float64]
 NOISE_RMS_TAKEN = 6.0
 """How many rms of noise are taken off a depth; common practice, no source."""
+SETTLED_V = 1e-12
+"""What is left of a lag below this is less than the field's own error and is forgotten."""
 
 
 class Carry:
@@ -72,11 +74,21 @@ class Deviations:
 
     def __init__(self, trap: Trap, shipped: ShippedBlock, carry: Carry) -> None:
         self.trap, self.carry = trap, carry
-        self.converters = [output for output in trap.outputs if isinstance(output, Converter)]
+        self.converters = {
+            output.name: output for output in trap.outputs if isinstance(output, Converter)
+        }
         self.quiet = {output.name: quiet(output) for output in trap.outputs}
+        each = [self.quiet[name] for name in self.converters]
+        self._half_code = np.array([one.half_code_V for one in each] + [0.0])
+        self._noise = np.array([one.noise_V for one in each] + [0.0])
+        self._per_volt = np.array([one.gain_spread / abs(one.gain) for one in each] + [0.0])
+        self._at_zero = np.array([one.calibration_V(0.0) for one in each] + [0.0])
         self._strays = {(s.output, s.start_s): s.volts for s in shipped.strays}
         self._reach = _Reach(trap, shipped)
         self._stray_before: dict[str, float] = {}
+        # Outputs that still have something to answer for; all others stand where they should.
+        early = {one.output for one in shipped.strays if one.early_s > 0}
+        self._unsettled = early | set(carry.behind_V)
 
     def on(
         self,
@@ -93,25 +105,38 @@ class Deviations:
         which electrode columns a converter moves, `at_levels` which switch a column may be at a
         fixed level of.
         """
-        count = len(self.trap.electrodes)
-        stray, lag, half, calibration, noise = np.zeros((5, count))
-        for converter in self.converters:
-            name = converter.name
-            piece = running.get(name)
-            stray_V = self._stray(name, piece, start_s, end_s)
-            lag_V = self._follow(converter, piece, stray_V, float(end_s - start_s))
+        largest = np.array([abs(volts[name]) for name in self.converters] + [0.0])
+        owner = np.full(len(self.trap.electrodes), len(self.converters))
+        for index, name in enumerate(self.converters):
+            owner[list(behind[name])] = index
+            if name in running:
+                largest[index] = max(largest[index], abs(running[name].to_V))
+        half, noise = self._half_code[owner], self._noise[owner]
+        calibration = (self._at_zero + self._per_volt * largest)[owner]
+        stray, lag = np.zeros((2, len(owner)))
+        for name in sorted(self._unsettled | set(running)):
             columns = list(behind[name])
-            if columns:
-                error = self.quiet[name]
-                largest = max(abs(volts[name]), abs(piece.to_V) if piece else 0.0)
-                stray[columns], lag[columns] = stray_V, lag_V
-                half[columns], noise[columns] = error.half_code_V, error.noise_V
-                calibration[columns] = error.calibration_V(largest)
+            stray_V, lag_V = self._moved(name, running.get(name), start_s, end_s)
+            stray[columns], lag[columns] = stray_V, lag_V
         for column, switch in at_levels.items():
             error = self.quiet[switch]
             calibration[column] = max(calibration[column], error.offset_spread_V)
             noise[column] = max(noise[column], error.noise_V)
         return stray, lag, half, calibration, noise
+
+    def _moved(
+        self, name: str, piece: Piece | None, start_s: Fraction, end_s: Fraction
+    ) -> tuple[float, float]:
+        """Stray and lag (V) of an output that moves or has moved; forget it once it has settled."""
+        stray_V = self._stray(name, piece, start_s, end_s)
+        lag_V = self._follow(self.converters[name], piece, stray_V, float(end_s - start_s))
+        self._unsettled.add(name)
+        left_V = self.carry.behind_V.get(name, 0.0)
+        if piece is None and max(stray_V, left_V) < SETTLED_V and self._reach.over(name, end_s):
+            self._unsettled.discard(name)
+            self.carry.behind_V.pop(name, None)
+            self._stray_before.pop(name, None)
+        return stray_V, lag_V
 
     def _stray(self, name: str, piece: Piece | None, start_s: Fraction, end_s: Fraction) -> float:
         nearby = self._reach.stray_V(name, start_s, end_s, piece)
@@ -162,6 +187,14 @@ class _Reach:
             )
             window = (piece.start_s - early_s, piece.end_s + late_s, volts, piece)
             self._windows.setdefault(piece.output, []).append(window)
+
+    def over(self, output: str, time_s: Fraction) -> bool:
+        """Whether no piece of an output is still to come within its reach at a time (s)."""
+        windows = self._windows.get(output, [])
+        index = self._first.get(output, 0)
+        while index < len(windows) and windows[index][1] <= time_s:
+            index += 1
+        return index == len(windows) or windows[index][0] == windows[index][3].start_s
 
     def stray_V(
         self, output: str, start_s: Fraction, end_s: Fraction, running: Piece | None

@@ -254,7 +254,7 @@ class _Walk:
         """Which electrode columns each converter moves, with the switches as they stand."""
         key = tuple(self.levels.values())
         if key not in self.fixed:
-            found: dict[str, list[int]] = {output.name: [] for output in self.deviations.converters}
+            found: dict[str, list[int]] = {name: [] for name in self.deviations.converters}
             for electrode, column in self.columns.items():
                 output = self.trap.output_of(electrode)
                 name: float | str = output.name

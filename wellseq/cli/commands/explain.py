@@ -85,7 +85,6 @@ def _unit(name: str) -> str:
 def _near(name: str) -> str:
     from wellseq.base.names import RESERVED, nearest
     from wellseq.base.quantity import UNITS
-
     from wellseq.model.steps import verbs
 
     known = {key for key, _ in pages()} | RESERVED | set(UNITS) | set(verbs())
