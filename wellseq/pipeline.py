@@ -11,7 +11,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import replace
 from functools import cache
-from os import PathLike, fspath
+from os import PathLike
 from pathlib import Path
 
 from wellseq.base.finding import Finding, Mistake
@@ -44,7 +44,7 @@ class TrapMistakes(ValueError):
 
 def load_trap(path: Name) -> Trap:
     """The trap that a file describes.  Raises TrapMistakes with everything wrong in it."""
-    trap, mistakes = read_trap(Path(path), _shown(path))
+    trap, mistakes = read_trap(Path(path), Path(path).as_posix())
     if trap is None:
         raise TrapMistakes(mistakes)
     return trap
@@ -56,7 +56,7 @@ def compile_file(path: Name, *, lets: Mapping[str, str] | None = None, each: Eac
     `lets` replace values of the file, as written on a command line; `each` plays one value (from 1)
     of an `each` only.  Never raises for what is in the file: `findings` has it.
     """
-    return judge(_stages(Path(path), _shown(path), lets or {}, each))
+    return judge(_stages(Path(path), Path(path).as_posix(), lets or {}, each))
 
 
 def _stages(path: Path, shown: str, lets: Mapping[str, str], each: Each) -> Case:
@@ -67,9 +67,8 @@ def _stages(path: Path, shown: str, lets: Mapping[str, str], each: Each) -> Case
     if isinstance(text, Mistake):
         return Case(path, shown, mistakes=(text,), sources=(SourceFile(shown, content),))
     tree = parse(text, shown)
-    built = model.build(
-        tree, path, known_findings=check_names(), lets=lets, each=each, content=content
-    )
+    known = check_names()
+    built = model.build(tree, path, known_findings=known, lets=lets, each=each, content=content)
     case = Case(path, shown, built.mistakes, built.trap, built.sequence, sources=built.sources)
     if built.sequence is None or built.mistakes:
         return case
@@ -82,18 +81,15 @@ def _played(case: Case, sequence: Sequence) -> Case:
     timeline = draw(sequence, field_of)
     shipped = ship(timeline)
     wells = trace(timeline, shipped, field_of()) if not timeline.mistakes else None
-    return replace(
-        case, mistakes=timeline.mistakes, timeline=timeline, shipped=shipped, wells=wells
-    )
+    drawn = replace(case, mistakes=timeline.mistakes, timeline=timeline)
+    return replace(drawn, shipped=shipped, wells=wells)
 
 
 def _value_of(sequence: Sequence, each: Each) -> str:
     """The value of the `each` that is played alone, in base units; empty when all are."""
-    if each is None:
-        return ""
-    number = each if isinstance(each, int) else each[1]
+    number = each[1] if isinstance(each, tuple) else each
     values = sequence.each_values
-    return str(values[number - 1]) if 0 < number <= len(values) else ""
+    return str(values[number - 1]) if number and number <= len(values) else ""
 
 
 def build(
@@ -101,8 +97,8 @@ def build(
 ) -> Case:
     """Compile a file and, if nothing stands in the way, publish its tables as `folder`.
 
-    Whether it did is `not case.blocked and not case.not_run`.  Raises CannotPublish when the folder
-    cannot be written, Miswritten when it does not read back; in both cases nothing was changed.
+    Raises CannotPublish when the folder cannot be written, Miswritten when it does not read back;
+    in both cases nothing was changed.
     """
     case = compile_file(path, lets=lets, each=each)
     publish(case, folder)
@@ -120,8 +116,4 @@ def publish(case: Case, folder: Name) -> bool:
 
 def verify(folder: Name) -> tuple[Finding, ...]:
     """Everything wrong with a published folder, from its bytes alone; empty when it is sound."""
-    return second_reader.verify(Path(folder), _shown(folder))
-
-
-def _shown(path: Name) -> str:
-    return fspath(path).replace("\\", "/")
+    return second_reader.verify(Path(folder), Path(folder).as_posix())

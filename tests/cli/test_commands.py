@@ -3,6 +3,9 @@
 from __future__ import annotations
 
 import json
+import os
+import subprocess
+import sys
 from collections.abc import Callable
 from pathlib import Path
 from types import SimpleNamespace
@@ -170,10 +173,21 @@ def test_each_makes_a_folder_per_value(bench: Path, run: Run) -> None:
     assert not (bench / "out").exists()
 
 
-def test_each_without_an_each_is_wrong_usage(bench: Path, run: Run) -> None:
+def test_one_of_two_eaches_is_chosen_by_its_name(bench: Path, run: Run) -> None:
+    two = "each pause of 1 s, 2 s { each more of 1 s, 3 s, 4 s { hold for pause + more } }"
+    spoil(bench, "hold for 10 s", two)
     ran = run("build", "first.well", "-o", "out", "--each")
-    assert ran.status == 64
-    assert "has no `each`" in ran.err
+    assert ran.status == 1
+    assert ran.out.count("this file has more than one `each`") == 1
+    assert run("build", "first.well", "-o", "out", "--each-of", "more").status == 0
+    assert sorted(path.name for path in bench.glob("out*")) == ["out-1", "out-2", "out-3"]
+    manifests = [json.loads((bench / f"out-{n}" / "manifest.json").read_text()) for n in (1, 2, 3)]
+    assert [one["each"] for one in manifests] == ["1", "3", "4"]
+
+
+def test_each_needs_an_each(bench: Path, run: Run) -> None:
+    assert run("build", "first.well", "-o", "out", "--each").status == 1
+    assert list(bench.glob("out*")) == []
 
 
 def test_no_folder_to_verify_is_66(bench: Path, run: Run) -> None:
@@ -277,3 +291,49 @@ def test_mistakes_are_values_in_python_too(bench: Path) -> None:
         wellseq.load_trap("nowhere.trap.toml")
     with pytest.raises(AttributeError):
         wellseq.nothing  # noqa: B018
+
+
+# whole outputs
+
+TIRED = """\
+FAILS  unknown-name
+          'cradl' is not known as a pattern
+ written  ramp cradl over 20 ms smoothly
+               ~~~~~
+      at  first.well, line 14, column 8
+     try  did you mean 'cradle'?
+
+FAILS  unit-mismatch
+          `for` needs a time (s), and this is 10 V
+ written  hold for 10 V
+                   ~~~~
+      at  first.well, line 21, column 12, step "wait"
+     try  write for example '20 ms'
+
+"""
+
+
+def test_two_mistakes_as_a_person_reads_them(bench: Path, run: Run) -> None:
+    spoil(bench, "ramp cradle", "ramp cradl")
+    spoil(bench, "hold for 10 s", "hold for 10 V")
+    told = run("check", "first.well").out
+    # The label stands in the tree only when the statement was read; both forms are told the same.
+    assert told.replace(', step "wait"', "").startswith(TIRED.replace(', step "wait"', ""))
+    assert told.splitlines()[-1].startswith("first.well: not clear; 2 fail, ")
+
+
+@pytest.mark.parametrize("seed", ["0", "1", "random"])
+def test_no_seed_zone_or_locale_changes_a_byte(bench: Path, run: Run, seed: str) -> None:
+    run("build", "first.well", "-o", "here")
+    root = str(Path(wellseq.__file__).parents[1])
+    changed = {"PYTHONHASHSEED": seed, "TZ": "Pacific/Apia", "LC_ALL": "tr_TR", "COLUMNS": "40"}
+    subprocess.run(
+        [sys.executable, "-m", "wellseq", "build", "first.well", "-o", "there"],
+        env={**os.environ, "PYTHONPATH": root, **changed},
+        capture_output=True,
+        check=True,
+    )
+    for path in sorted((bench / "here").rglob("*")):
+        if path.is_file():
+            other = bench / "there" / path.relative_to(bench / "here")
+            assert other.read_bytes() == path.read_bytes(), path

@@ -1,4 +1,4 @@
-"""Exact values → the many ways in which a file may write them, chosen by a seeded source."""
+"""Exact values → the many ways in which a file may write them, chosen at random."""
 
 from __future__ import annotations
 

@@ -1,4 +1,4 @@
-"""A seeded source → valid statements for the trap `lagoon`, as nested lists.
+"""A source of chance → valid statements for the trap `lagoon`, as nested lists.
 
 Voltages stay within ±12 V and ramps are slow enough to be followed, so that whatever differs later
 is a mistake and no limit of the hardware.  What a body may touch is its `Reach`: lanes share

@@ -39,9 +39,9 @@ def pitched(count, pitch_m=0.0134, gap_m=0.001, radius_m=0.015):
 
 
 @cache
-def bench(count):
+def bench(count, pitch_m=0.0134):
     """The field of an evenly pitched stack, solved once per run."""
-    return Field(pitched(count))
+    return Field(pitched(count, pitch_m))
 
 
 def volts(count, **named):

@@ -9,16 +9,15 @@ from dataclasses import replace
 
 import numpy as np
 import pytest
-from stacks import bench, pitched, volts
+from stacks import bench, volts
 
 from wellseq.fields.certificate import certify, oscillation
-from wellseq.fields.field import Field
 from wellseq.fields.following import follow, locate, prove
 from wellseq.fields.minima import landscape
 
 COUNT = 15
 RIPPLE = 1e-3
-LONG = Field(pitched(COUNT, 0.03))
+LONG_M = 0.03
 
 
 def separating(value):
@@ -84,7 +83,7 @@ def test_what_is_accepted_survives_playing(reach, least):
     field = bench(COUNT)
     rng = np.random.default_rng(3)
     accepted = 0
-    pieces = list(random_pieces(120, int(reach), reach))
+    pieces = list(random_pieces(300, int(reach), reach))
     for start, end, z_m, deviation in pieces:
         ripple = max(RIPPLE, 2 * deviation.max())
         proven = prove(field, 1.0, start, end, z_m, deviation, ripple)
@@ -179,7 +178,7 @@ def test_following_goes_to_the_well_it_began_in():
 
 
 def test_flat_bottom_is_one_well_within_the_ripple():
-    field = LONG
+    field = bench(COUNT, LONG_M)
     rng = np.random.default_rng(0)
     start = volts(COUNT, E2=40.0, E12=40.0)
     start[3:12] = 5.0 + rng.uniform(-2e-4, 2e-4, 9)
@@ -203,7 +202,7 @@ def test_flat_bottom_is_one_well_within_the_ripple():
 
 def test_a_shoulder_is_passed_within_the_ripple():
     # A wall with a long step half way up: the barrier is the top, not the step.
-    field = LONG
+    field = bench(COUNT, LONG_M)
     vector = volts(COUNT, E2=40.0, E6=20.0, E7=20.0, E8=20.0, E9=20.0, E10=20.0, E11=20.0, E12=40.0)
     found = locate(field, 1.0, vector, 0.12)
     still = np.full(COUNT, 2e-3)

@@ -1,4 +1,4 @@
-"""A seeded source → damaged files: what tired fingers, broken disks and ill will make of them."""
+"""A number → a damaged file: what tired fingers, broken disks and ill will make of a good one."""
 
 from __future__ import annotations
 

@@ -1,4 +1,4 @@
-"""The rules about docstrings: everything public has one, and whoever deals in numbers says units."""
+"""The rules about docstrings: everything public has one, and where numbers go in it says units."""
 
 from __future__ import annotations
 
@@ -47,9 +47,7 @@ def unitless(package: Path) -> Offences:
         tree = tree_of(path)
         for function, said in functions(tree, [ast.get_docstring(tree) or ""]):
             for unit in sorted(units_of(function)):
-                pattern = rf"(?<![A-Za-z_]){UNITS[unit]}(?![A-Za-z_])".replace(
-                    UNITS[unit], f"(?:{UNITS[unit]})"
-                )
+                pattern = rf"(?<![A-Za-z_])(?:{UNITS[unit]})(?![A-Za-z_])"
                 if not any(re.search(pattern, text) for text in said):
                     yield f"{path}:{function.lineno}: {function.name} does not say '{unit}'"
 
@@ -72,9 +70,9 @@ def functions(node: ast.AST, said: list[str]) -> Functions:
     for child in ast.iter_child_nodes(node):
         if isinstance(child, ast.ClassDef) and not child.name.startswith("_"):
             yield from functions(child, [*said, ast.get_docstring(child) or ""])
-        elif isinstance(child, ast.FunctionDef | ast.AsyncFunctionDef):
-            if not child.name.startswith("_"):
-                yield child, [*said, ast.get_docstring(child) or ""]
+        is_function = isinstance(child, ast.FunctionDef | ast.AsyncFunctionDef)
+        if is_function and not child.name.startswith("_"):
+            yield child, [*said, ast.get_docstring(child) or ""]
 
 
 def units_of(function: ast.FunctionDef | ast.AsyncFunctionDef) -> set[str]:

@@ -19,6 +19,9 @@ def amount(value: float, unit: str) -> str:
     if value == 0:
         return f"0 {unit}"
     size = abs(value)
+    if unit == "s" and size >= 1:
+        # Nobody counts in kiloseconds.
+        return f"{value:.6g} s"
     scale, prefix = next((step for step in _STEPS if size >= step[0] * 0.99995), _STEPS[-1])
     return f"{_figures(value / scale)} {prefix}{unit}"
 

@@ -5,10 +5,9 @@ from __future__ import annotations
 import argparse
 import sys
 from collections.abc import Sequence
-from pathlib import Path
-from typing import TYPE_CHECKING
 
 from wellseq.cli import status
+from wellseq.cli.members import TYPE_CHECKING, names_in
 from wellseq.cli.terminal import colour_here, width_here
 
 if TYPE_CHECKING:
@@ -18,8 +17,7 @@ if TYPE_CHECKING:
 def add_format(parser: argparse.ArgumentParser) -> None:
     """`--format` and `--margins`."""
     # The forms are read off the folder: importing them would load numpy for a mere --help.
-    folder = Path(__file__).parent.parent / "emit" / "reports"
-    names = sorted(file.stem for file in folder.glob("*.py") if file.stem != "__init__")
+    names = names_in("emit", "reports")
     parser.add_argument(
         "--format", choices=names, default="text", help="how findings are written (text)"
     )
@@ -42,7 +40,7 @@ def add_lets(parser: argparse.ArgumentParser) -> None:
     )
 
 
-def lets_of(arguments: argparse.Namespace, parser_error: str = "") -> dict[str, str]:
+def lets_of(arguments: argparse.Namespace) -> dict[str, str]:
     """The values given by `--let`; the last one of a name counts."""
     return dict(arguments.let)
 

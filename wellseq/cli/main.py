@@ -8,16 +8,17 @@ from __future__ import annotations
 import argparse
 import os
 import sys
-import traceback
 from collections.abc import Sequence
 from importlib import import_module
-from pathlib import Path
-from types import ModuleType
-from typing import NoReturn
 
 from wellseq.cli import status
+from wellseq.cli.members import TYPE_CHECKING, names_in
 from wellseq.cli.terminal import prepare
 from wellseq.version import __version__
+
+if TYPE_CHECKING:
+    from types import ModuleType
+    from typing import NoReturn
 
 DESCRIPTION = "Compile a sequence for the electrodes of a Penning-Malmberg trap, or say why not."
 EPILOGUE = """\
@@ -38,6 +39,7 @@ class Parser(argparse.ArgumentParser):
         )
 
     def error(self, message: str) -> NoReturn:
+        """Say what is wrong with the words of a call, and end with the status for that."""
         self.print_usage(sys.stderr)
         self.exit(status.USAGE, f"wellseq: {message}\n")
 
@@ -66,31 +68,38 @@ def main(argv: Sequence[str] | None = None) -> int:
 
 
 def _run(argv: Sequence[str] | None) -> int:
-    arguments = parser().parse_args(argv)
+    given = sys.argv[1:] if argv is None else list(argv)
+    arguments = parser(given[0] if given else "").parse_args(given)
     code: int = arguments.run(arguments)
     return code
 
 
-def parser() -> Parser:
-    """The whole command line; every command adds its own arguments."""
+def parser(first: str) -> Parser:
+    """The command line as far as it is needed when `first` is its first word.
+
+    Each command adds its own arguments; where one is named, the others are not even imported.
+    """
     whole = Parser(prog="wellseq", description=DESCRIPTION, epilog=EPILOGUE)
     whole.add_argument("--version", action="version", version=f"wellseq {__version__}")
-    commands = whole.add_subparsers(title="commands", metavar="COMMAND", required=True)
-    for name in command_names():
+    commands = whole.add_subparsers(
+        title="commands", metavar="COMMAND", required=True, prog="wellseq"
+    )
+    names = command_names()
+    for name in (first,) if first in names else names if first != "--version" else ():
         module = command(name)
         says = (module.__doc__ or "").splitlines()[0]
         one = commands.add_parser(
             name, help=says, description=says, epilog=f"example: {module.EXAMPLE}"
         )
-        module.add_arguments(one)
-        one.set_defaults(run=module.run)
+        if name == first:
+            module.add_arguments(one)
+            one.set_defaults(run=module.run)
     return whole
 
 
 def command_names() -> tuple[str, ...]:
     """The names of all commands, in alphabetical order."""
-    folder = Path(__file__).parent / "commands"
-    return tuple(sorted(file.stem for file in folder.glob("*.py") if file.stem != "__init__"))
+    return names_in("cli", "commands")
 
 
 def command(name: str) -> ModuleType:
@@ -110,6 +119,8 @@ def _no_output(error: OSError) -> int:
 
 def _our_fault(error: Exception) -> int:
     if os.environ.get("WELLSEQ_DEBUG") == "1":
+        import traceback
+
         traceback.print_exc()
     sys.stderr.write(
         f"wellseq: this is a fault of wellseq itself ({type(error).__name__}: {_one_line(error)}); "

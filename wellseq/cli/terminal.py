@@ -7,10 +7,13 @@ CLICOLOR=0 or TERM=dumb forbids it; else it is used on terminals.
 from __future__ import annotations
 
 import os
-import shutil
 import sys
 from collections.abc import Mapping
-from typing import TextIO
+
+from wellseq.cli.members import TYPE_CHECKING
+
+if TYPE_CHECKING:
+    from typing import TextIO
 
 WIDTH_LEAST = 40
 WIDTH_MOST = 120
@@ -38,6 +41,8 @@ def width_here() -> int:
     """Columns to write for: those of the terminal within reason, a fixed number elsewhere."""
     if not sys.stdout.isatty():
         return WIDTH_ELSEWHERE
+    import shutil
+
     columns = shutil.get_terminal_size((WIDTH_ELSEWHERE, 24)).columns
     return max(WIDTH_LEAST, min(columns, WIDTH_MOST))
 

@@ -5,7 +5,7 @@ A sequence (`Case`) and a published folder both become an `Examined`, so a repor
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
 
 from wellseq.base.finding import Finding, Verdict
@@ -51,9 +51,14 @@ class Examined:
         """The findings with one of these verdicts, in order of place."""
         return tuple(finding for finding in self.findings if finding.verdict in verdicts)
 
-    def by_margin(self) -> tuple[Finding, ...]:
-        """The passing readings, the one nearest to its limit first."""
-        return tuple(sorted(self.having(Verdict.PASS), key=nearness))
+
+def nearest_of_each(findings: Iterable[Finding]) -> tuple[Finding, ...]:
+    """The passing reading nearest to its limit for each name and subject, the nearest first."""
+    measured = [one for one in findings if one.verdict is Verdict.PASS and one.value is not None]
+    nearest: dict[tuple[str, str], Finding] = {}
+    for finding in sorted(measured, key=nearness):
+        nearest.setdefault((finding.name, finding.subject), finding)
+    return tuple(nearest.values())
 
 
 def nearness(finding: Finding) -> tuple[float, object, str, str]:

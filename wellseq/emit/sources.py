@@ -40,8 +40,8 @@ def copies(case: Case) -> tuple[Copy, ...]:
     if case.trap.file and case.trap.file not in files:
         files[case.trap.file] = case.trap.source.encode("utf-8")
     main = case.sequence.file if case.sequence.file in files else next(iter(files), "")
-    home = posixpath.dirname(_slashed(main))
-    names = {shown: _relative(_slashed(shown), home) for shown in files}
+    home = posixpath.dirname(_plain(main))
+    names = {shown: _relative(_plain(shown), home) for shown in files}
     ups = max((name.split("/").count("..") for name in names.values()), default=0)
     below = _free_name(names.values())
     order = sorted(files, key=lambda shown: (shown != main, names[shown]))
@@ -52,8 +52,8 @@ def copies(case: Case) -> tuple[Copy, ...]:
     return tuple(found)
 
 
-def _slashed(shown: str) -> str:
-    return posixpath.normpath(shown.replace("\\", "/"))
+def _plain(shown: str) -> str:
+    return posixpath.normpath(shown)
 
 
 def _relative(shown: str, home: str) -> str:

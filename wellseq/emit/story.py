@@ -64,13 +64,17 @@ def assumed(case: Case) -> list[dict[str, object]]:
 
 
 def roundings(case: Case) -> list[tuple[int, Rounding]]:
-    """(block index, rounding) of every edge that was moved onto its clock, the largest first."""
+    """(block index, rounding) of every edge that was moved onto its clock, the largest first.
+
+    Where one piece ends and the next begins is one edge.
+    """
     blocks = case.shipped.blocks if case.shipped is not None else ()
-    found = [
-        (block.block.index, rounding)
+    edges = {
+        (block.block.index, rounding.output, rounding.asked_s): rounding
         for block in blocks
         for rounding in block.roundings
-        if rounding.error_s
-    ]
+        if rounding.asked_s != rounding.emitted_s
+    }
+    found = [(block, rounding) for (block, _, _), rounding in edges.items()]
     found.sort(key=lambda item: (-abs(item[1].error_s), item[0], item[1].asked_s, item[1].output))
     return found

@@ -35,16 +35,20 @@ class TrapLike(Protocol):
     """What a field needs of a trap: its electrodes in order along the axis."""
 
     @property
-    def electrodes(self) -> Sequence[uniform.Electrode]: ...
+    def electrodes(self) -> Sequence[uniform.Electrode]:
+        """Electrodes in order along the axis."""
 
 
 class SpeciesLike(Protocol):
     """What a frequency needs of a species: mass in kg, charge in C (with its sign)."""
 
     @property
-    def mass_kg(self) -> float: ...
+    def mass_kg(self) -> float:
+        """Mass, kg."""
+
     @property
-    def charge_C(self) -> float: ...
+    def charge_C(self) -> float:
+        """Charge with its sign, C."""
 
 
 @dataclass(frozen=True, slots=True)

@@ -35,6 +35,7 @@ Reason = Literal[
     "the next electrode has become the barrier",
     "no voltage within the range",
     "the depth does not fall",
+    "the depth is already less",
     "no well holds the cloud",
 ]
 TOLERANCE_V = 1e-3
@@ -129,7 +130,9 @@ def evaporation_path(
     here = branch.look(0.0, z_m)
     if here is None:
         return branch.refusal("no well holds the cloud", None)
-    if not 0.0 < to_V < here.depth_V or abs(here.slope) < 1e-9:
+    if to_V >= here.depth_V:
+        return branch.refusal("the depth is already less", here)
+    if to_V <= 0.0 or abs(here.slope) < 1e-9:
         return branch.refusal("the depth does not fall", here)
     branch.head(here)
     return _march(branch, here, _Wish(here.depth_V, to_V, equal_ratios))

@@ -52,13 +52,20 @@ class Electrode(Protocol):
     """What this floor needs of an electrode: name, span along the axis and inner radius, in m."""
 
     @property
-    def name(self) -> str: ...
+    def name(self) -> str:
+        """Its name in the trap file."""
+
     @property
-    def from_m(self) -> float: ...
+    def from_m(self) -> float:
+        """Where it begins along the axis, m."""
+
     @property
-    def to_m(self) -> float: ...
+    def to_m(self) -> float:
+        """Where it ends along the axis, m."""
+
     @property
-    def radius_m(self) -> float: ...
+    def radius_m(self) -> float:
+        """Inner radius, m."""
 
 
 @dataclass(frozen=True, slots=True)

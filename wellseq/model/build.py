@@ -6,7 +6,7 @@ import gc
 import os
 from collections.abc import Collection, Iterator, Mapping
 from contextlib import contextmanager
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from fractions import Fraction
 from pathlib import Path
 
@@ -148,7 +148,11 @@ class _Build:
         path = self.path.parent / header.trap.text
         trap, mistakes = read_trap(path, beside(self.tree.file, header.trap.text))
         for mistake in mistakes:
-            self.reporter.add(mistake)
+            # What cannot be opened has no place of its own: the mistake is where it is named.
+            unreadable = mistake.name == "unreadable-file"
+            self.reporter.add(
+                replace(mistake, place=header.trap.place) if unreadable else mistake
+            )
         if trap is None:
             return None, None
         self.sources.append(SourceFile(trap.file, trap.source.encode("utf-8")))

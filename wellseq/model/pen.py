@@ -68,7 +68,7 @@ class Pen(Protocol):
         order: int,
         sense: int,
     ) -> None:
-        """Drive a ring's sectors: azimuthal order 1 or 2, sense +1 counter-clockwise from +z."""
+        """Drive a ring's sectors, Hz and V: order 1 or 2, sense +1 counter-clockwise from +z."""
 
     def set_line(self, line: str, state: str) -> None:
         """Put a digital output line into a state now."""

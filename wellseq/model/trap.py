@@ -82,7 +82,7 @@ class Trap(Part):
 
     @property
     def radius_m(self) -> float:
-        """The inner radius of the bore, the same for every electrode."""
+        """The inner radius of the bore, m, the same for every electrode."""
         return self.electrodes[0].radius_m
 
     @cached_property

@@ -226,7 +226,7 @@ class Drawing:
         order: int,
         sense: int,
     ) -> None:
-        """Drive the sectors of a ring; sector k lags by its angle times the azimuthal order."""
+        """Drive the sectors of a ring (Hz, V); sector k lags by its angle times the order."""
         stop = self.now + duration_s
         if not self.take("ring", ring):
             self.now = stop

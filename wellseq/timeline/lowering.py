@@ -118,7 +118,7 @@ def lower_depth(
     duration_s: Fraction,
     exponentially: bool,
 ) -> None:
-    """Draw straight pieces that lower the cloud's own vacuum depth to `to_V`, or refuse why not."""
+    """Draw straight pieces that lower a cloud's own vacuum depth to `to_V` (V), or say why not."""
     converters = _converters(drawing, electrodes)
     if converters is None:
         return

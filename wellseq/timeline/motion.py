@@ -100,7 +100,7 @@ class Moving:
         return any(piece.shape is not Shape.EDGE for piece, _ in self.pieces)
 
     def motion(self, start_s: Fraction, end_s: Fraction) -> tuple[Vector, Vector, Vector]:
-        """base, moves and shape_V between two instants."""
+        """base, moves and shape_V (V) between two instants (s)."""
         base = self.still.copy()
         shape_V = np.zeros_like(base)
         rows: list[Vector] = []
@@ -131,7 +131,7 @@ class Moving:
         return base, moves[np.any(moves != 0, axis=1)], shape_V
 
     def between(self, whole: Segment, start_s: Fraction, end_s: Fraction) -> Segment:
-        """The part of a segment between two instants; all other deviations stay as they are."""
+        """The part of a segment between two instants (s); other deviations stay as they are."""
         base, moves, shape_V = self.motion(start_s, end_s)
         return Segment(
             start_s,

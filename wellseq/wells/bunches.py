@@ -21,7 +21,7 @@ ENERGY_KEPT_SHARE = 0.99
 
 
 def guard(field: Field, patch_V: float, bunch: Bunch, segment: Segment, block: int) -> Held:
-    """Certify both gates through a segment; the first one sets what has been kept."""
+    """Certify both gates (V) through a segment; the first one sets what has been kept."""
     spans = sorted((field.span_m(gate) for gate in bunch.gates), key=sum)
     left, right = (
         (int(np.searchsorted(field.z_m, low)), int(np.searchsorted(field.z_m, high)))

@@ -119,7 +119,7 @@ class Holding:
     def hold(
         self, sign: int, z_m: float, segment: Segment, floor_V: float
     ) -> Iterator[Hold | Lost]:
-        """Follow a well through a segment; stops after the first part that is lost."""
+        """Follow a well from z (m) through a segment against a floor (V); ends where it is lost."""
         waiting = [(part_of(segment), 0)]
         ripple_V = max(RIPPLE_V, RIPPLE_SHARE * floor_V)
         while waiting:

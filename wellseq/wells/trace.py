@@ -81,7 +81,7 @@ class Tracing:
         message: str,
         hint: str = "",
     ) -> None:
-        """Record what went wrong with a cloud at an event; the cloud is not followed any more."""
+        """Record what went wrong with a cloud at an event and a place (m); it is dropped."""
         window = float(event.start_s), float(event.end_s)
         self.unproved.append(
             Unproved(trouble, cloud, self.index, event.number, *window, at_m, message, hint)

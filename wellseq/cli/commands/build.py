@@ -8,7 +8,6 @@ from __future__ import annotations
 
 import argparse
 import sys
-from typing import TYPE_CHECKING
 
 from wellseq.cli import status
 from wellseq.cli.common import (
@@ -19,6 +18,7 @@ from wellseq.cli.common import (
     print_report,
     status_of,
 )
+from wellseq.cli.members import TYPE_CHECKING
 
 if TYPE_CHECKING:
     from wellseq.checks.case import Case
@@ -27,13 +27,16 @@ EXAMPLE = "wellseq build evening.well -o evening-tables"
 
 
 def add_arguments(parser: argparse.ArgumentParser) -> None:
-    """FILE, -o FOLDER, --let, --each, --format, --margins."""
+    """FILE, -o FOLDER, --each, --each-of, --let, --format, --margins."""
     parser.add_argument("file", metavar="FILE", help="a sequence, NAME.well")
     parser.add_argument(
         "-o", "--output", required=True, metavar="FOLDER", help="the folder to publish"
     )
     parser.add_argument(
         "--each", action="store_true", help="a folder per value of the sequence's `each`"
+    )
+    parser.add_argument(
+        "--each-of", metavar="NAME", help="the same, where a sequence has more than one `each`"
     )
     add_lets(parser)
     add_format(parser)
@@ -46,9 +49,6 @@ def run(arguments: argparse.Namespace) -> int:
     from wellseq.pipeline import publish
 
     cases = _cases(arguments)
-    if not cases:
-        complain(f"{arguments.file} has no `each` whose values could be built one by one")
-        return status.USAGE
     things = [examined(case) for case in cases]
     print_report(things, arguments)
     code = status.worst(status_of(thing) for thing in things)
@@ -69,22 +69,34 @@ def run(arguments: argparse.Namespace) -> int:
 
 
 def _cases(arguments: argparse.Namespace) -> list[Case]:
-    """The cases to publish: one, or with --each one per value; empty when there is no value."""
+    """The cases to publish: one, or one per value of an `each`.
+
+    What keeps the first value from being drawn keeps all of them, and is told once.
+    """
     from wellseq.pipeline import compile_file
 
     lets = lets_of(arguments)
-    whole = compile_file(arguments.file, lets=lets)
-    if not arguments.each or whole.sequence is None:
-        return [whole]
-    values = whole.sequence.each_values
-    return [
-        compile_file(arguments.file, lets=lets, each=number + 1) for number in range(len(values))
-    ]
+    if not _alone(arguments):
+        return [compile_file(arguments.file, lets=lets)]
+    cases: list[Case] = []
+    count = 1
+    while len(cases) < count:
+        number = len(cases) + 1
+        each = (arguments.each_of, number) if arguments.each_of else number
+        cases.append(compile_file(arguments.file, lets=lets, each=each))
+        if cases[0].sequence is not None and cases[0].timeline is not None:
+            count = len(cases[0].sequence.each_values)
+    return cases
+
+
+def _alone(arguments: argparse.Namespace) -> bool:
+    """Whether every value of an `each` is to be played alone."""
+    return arguments.each or arguments.each_of is not None
 
 
 def _folders(arguments: argparse.Namespace, count: int) -> list[str]:
     folder = arguments.output.rstrip("/") or arguments.output
-    if not arguments.each:
+    if not _alone(arguments):
         return [folder]
     return [f"{folder}-{number + 1}" for number in range(count)]
 

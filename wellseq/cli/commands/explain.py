@@ -7,10 +7,13 @@ from __future__ import annotations
 
 import argparse
 import sys
-from pathlib import Path
 
 from wellseq.cli import status
 from wellseq.cli.common import complain
+from wellseq.cli.members import TYPE_CHECKING
+
+if TYPE_CHECKING:
+    from pathlib import Path
 
 EXAMPLE = "wellseq explain evaporate well-too-shallow V/us"
 

@@ -9,10 +9,13 @@ from __future__ import annotations
 import argparse
 import os
 import sys
-from pathlib import Path
 
 from wellseq.cli import status
 from wellseq.cli.common import complain
+from wellseq.cli.members import TYPE_CHECKING
+
+if TYPE_CHECKING:
+    from pathlib import Path
 
 EXAMPLE = "wellseq new mybench"
 
@@ -24,6 +27,8 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
 
 def run(arguments: argparse.Namespace) -> int:
     """Write the files to start from; returns the exit status."""
+    from pathlib import Path
+
     from wellseq.base.data import data_folder
 
     folder = Path(arguments.folder)

@@ -14,7 +14,7 @@ from wellseq.checks.case import Case
 from wellseq.checks.judging import Cleared
 from wellseq.checks.numbers import amount
 from wellseq.emit.escape import markdown
-from wellseq.emit.examined import nearness
+from wellseq.emit.examined import nearest_of_each
 from wellseq.emit.hazards import EXTRA_LOW_V, TOUCH_V, Hazard, Windows, hazards
 from wellseq.emit.sources import written_names
 from wellseq.emit.story import allowances, assumed, roundings
@@ -22,7 +22,7 @@ from wellseq.model.trap import Trap
 from wellseq.timeline.shipped import Shipped
 
 WINDOWS_SHOWN = 6
-MARGINS_SHOWN = 60
+MARGINS_OF_A_KIND = 3
 ROUNDINGS_SHOWN = 20
 
 
@@ -77,6 +77,7 @@ def _outputs(found: list[Hazard], shipped: Shipped) -> str:
             f"{heading}\n\nNo output is flagged hazardous, and by the trap file none can give more "
             f"than {TOUCH_V:g} V.\n\n{standing('touch')}"
         )
+    live = [one for one in found if one.flagged or one.windows]
     rows = [
         (
             markdown(one.output),
@@ -86,8 +87,12 @@ def _outputs(found: list[Hazard], shipped: Shipped) -> str:
             amount(one.able_V, "V"),
             _times(one.windows, shipped),
         )
-        for one in found
+        for one in live
     ]
+    quiet = [
+        f"{markdown(one.output)} ({amount(one.able_V, 'V')})" for one in found if one not in live
+    ]
+    said = f"Able to give more than {TOUCH_V:g} V, but never commanded to: {', '.join(quiet)}."
     head = (
         "output",
         "electrodes",
@@ -96,7 +101,8 @@ def _outputs(found: list[Hazard], shipped: Shipped) -> str:
         "able to",
         f"above {TOUCH_V:g} V",
     )
-    return f"{heading}\n\n{_table(head, rows)}\n\n{standing('touch')}"
+    parts = [heading, _table(head, rows) if rows else "", said if quiet else "", standing("touch")]
+    return "\n\n".join(part for part in parts if part)
 
 
 def _class(volts: float) -> str:
@@ -123,12 +129,14 @@ def _times(windows: Windows, shipped: Shipped) -> str:
 
 
 def _stored(found: list[Hazard]) -> str:
+    live = [one for one in found if one.flagged or one.windows]
+    live.sort(key=lambda one: -(one.stored_J or 0.0))
     rows = [
         (markdown(one.output), amount(one.stored_J, "J"), amount(one.largest_V, "V"))
-        for one in found
+        for one in live
         if one.stored_J is not None
     ]
-    unknown = [markdown(one.output) for one in found if one.stored_J is None]
+    unknown = [markdown(one.output) for one in live if one.stored_J is None]
     said = f"\n\nNo capacitance is given for: {', '.join(unknown)}." if unknown else ""
     if not rows and not unknown:
         return ""
@@ -261,21 +269,19 @@ def _assumed(case: Case) -> str:
 
 
 def _margins(case: Case) -> str:
-    """The passing reading nearest to its limit, for each kind and subject, nearest first."""
-    nearest: dict[tuple[str, str], Finding] = {}
-    measured = [
-        finding
-        for finding in case.findings
-        if finding.verdict is Verdict.PASS and finding.value is not None
-    ]
-    for finding in sorted(measured, key=nearness):
-        nearest.setdefault((finding.name, finding.subject), finding)
+    """The passing readings nearest to their limits, a few subjects of each kind, nearest first."""
+    nearest = nearest_of_each(case.findings)
     if not nearest:
         return ""
     names = written_names(case)
-    rows = [_margin(finding, names) for finding in list(nearest.values())[:MARGINS_SHOWN]]
+    shown: dict[str, int] = {}
+    rows = []
+    for finding in nearest:
+        shown[finding.name] = shown.get(finding.name, 0) + 1
+        if shown[finding.name] <= MARGINS_OF_A_KIND:
+            rows.append(_margin(finding, names))
     more = len(nearest) - len(rows)
-    said = f"\n\n{more} more lie further from their limits." if more > 0 else ""
+    said = f"\n\n{more} more of these kinds lie further from their limits." if more else ""
     head = ("what could go wrong", "of", "value", "limit", "margin", "where")
     return f"## Margins, the nearest to its limit first\n\n{_table(head, rows)}{said}"
 

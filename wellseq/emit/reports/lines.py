@@ -10,7 +10,7 @@ from collections.abc import Iterator, Sequence
 
 from wellseq.base.finding import Finding, Verdict
 from wellseq.base.names import printable
-from wellseq.emit.examined import Examined
+from wellseq.emit.examined import Examined, nearest_of_each
 from wellseq.emit.excerpt import display_column, source_line
 from wellseq.emit.formats import Options
 
@@ -26,7 +26,7 @@ def _lines(thing: Examined, options: Options) -> Iterator[str]:
     for finding in thing.having(Verdict.FAIL, Verdict.UNSURE, Verdict.ALLOWED):
         yield _line(thing, finding, _SEVERITY[finding.verdict])
     if options.margins:
-        for finding in thing.by_margin():
+        for finding in nearest_of_each(thing.findings):
             yield _line(thing, finding, "note")
     shown = printable(thing.shown)
     # What did not run because of an error listed above is no error of its own.

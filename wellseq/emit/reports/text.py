@@ -12,7 +12,7 @@ from wellseq.base.finding import Finding, Verdict
 from wellseq.base.names import printable
 from wellseq.base.place import Place
 from wellseq.checks.numbers import amount
-from wellseq.emit.examined import Examined
+from wellseq.emit.examined import Examined, nearest_of_each
 from wellseq.emit.excerpt import marker, shown_line, source_line
 from wellseq.emit.formats import Options
 
@@ -98,7 +98,7 @@ def _when(finding: Finding) -> str:
 
 
 def _margins(thing: Examined, options: Options) -> Iterator[str]:
-    passing = thing.by_margin()
+    passing = nearest_of_each(thing.findings)
     if passing:
         yield _painted(
             f"margins of {printable(thing.shown)}, the nearest to its limit first", "1", options
