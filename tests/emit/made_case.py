@@ -178,7 +178,12 @@ def blocks() -> tuple[Block, ...]:
         spans=(StepSpan(0, Fraction(0), MILLI), StepSpan(1, MILLI, 11 * MILLI)),
         duration_s=11 * MILLI,
     )
-    caught = replace(
+    return run, _caught(run)
+
+
+def _caught(run: Block) -> Block:
+    """The block at the trigger: a ramp down, a switch thrown and thrown back."""
+    return replace(
         run,
         name="bunch",
         index=1,
@@ -186,8 +191,8 @@ def blocks() -> tuple[Block, ...]:
         within_s=Fraction(130),
         first_row_s=Fraction(250, 10**9),
         jitter_s=Fraction(20, 10**9),
-        volts=volts | {"lv1": 100.0, "lv2": 4.0},
-        states=run.states | {"shutter": "open"},
+        volts={**run.volts, "lv1": 100.0, "lv2": 4.0},
+        states={**run.states, "shutter": "open"},
         pieces=(Piece("lv3", MILLI, 4 * MILLI, 20.0, 0.0, Shape.STRAIGHT, 2),),
         edges=(
             Edge(
@@ -207,7 +212,6 @@ def blocks() -> tuple[Block, ...]:
         spans=(StepSpan(2, Fraction(0), 4 * MILLI),),
         duration_s=4 * MILLI,
     )
-    return run, caught
 
 
 def side(certified_V: float) -> SideDepth:

@@ -8,13 +8,14 @@ import time
 
 import numpy as np
 import pytest
-from hypothesis import given, settings
+from hypothesis import assume, given, settings
 from hypothesis import strategies as st
 from stacks import bench, volts
 
 from wellseq.fields.inverse import Impossible, Path, evaporation_path, way_out
 
 COUNT = 15
+NOT_BEGUN = ("the depth is already less", "no well holds the cloud")
 
 
 def vertex(value, at):
@@ -199,9 +200,11 @@ def test_any_well_is_emptied_as_wished_or_refused(left, right, floor, around, to
     z_m = 0.0795
     path = evaporation_path(field, 1.0, vector, [7], z_m, to_V, [(-140.0, 140.0)], equal_ratios)
     if isinstance(path, Impossible):
-        assert (path.reached_V > to_V) == (path.reason != "the depth is already less")
+        assert (path.reached_V <= to_V) == (path.reason in NOT_BEGUN)
         return
     start = path.depths_V[0]
+    # Dimples below a millivolt do not hold a cloud: then the path is about the next well downhill.
+    assume(walked_depth(field, vector, z_m, "right")[0] == pytest.approx(start, abs=1e-4))
     rng = np.random.default_rng(0)
     for fraction in rng.random(60):
         wish = start + fraction * (to_V - start)

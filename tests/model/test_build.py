@@ -57,7 +57,7 @@ def test_without_a_trap_nothing_can_be_played(bench):
     ("path", "name", "file"),
     [
         ("/sandpit.trap.toml", "import-refused", "run.well"),
-        ("nowhere.trap.toml", "unreadable-file", "nowhere.trap.toml"),
+        ("nowhere.trap.toml", "unreadable-file", "run.well"),
     ],
 )
 def test_a_trap_that_cannot_be_read_hides_no_other_mistake(bench, path, name, file):

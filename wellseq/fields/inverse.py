@@ -23,7 +23,7 @@ import numpy as np
 
 from wellseq.fields.certificate import depth_oracle
 from wellseq.fields.convex import Line, least
-from wellseq.fields.following import prove
+from wellseq.fields.following import locate, prove
 from wellseq.fields.hermite import FloatArray
 from wellseq.fields.minima import RIPPLE_V, extrema, landscape
 
@@ -126,8 +126,10 @@ def evaporation_path(
     if not isfinite(to_V) or not np.isfinite(vector).all() or np.isnan(ranges_V).any():
         raise ValueError("evaporation needs finite voltages")
     ripple_V = min(RIPPLE_V, abs(to_V) / 10)
-    branch = _Branch(field, sign, vector, tuple(moving), z_m, ranges_V, ripple_V)
-    here = branch.look(0.0, z_m)
+    found = locate(field, sign, vector, z_m, ripple_V)
+    place_m = found.z_m if found else z_m
+    branch = _Branch(field, sign, vector, tuple(moving), place_m, ranges_V, ripple_V)
+    here = branch.look(0.0, place_m)
     if here is None:
         return branch.refusal("no well holds the cloud", None)
     if to_V >= here.depth_V:

@@ -67,6 +67,7 @@ class _Reader:
         self.files: dict[str, bytes] = {}
 
     def read(self) -> tuple[Finding, ...]:
+        """Manifest, hashes, meaning: each only while what it rests on is sound."""
         manifest = self._try(self._manifest)
         if manifest is None:
             return tuple(self.found)

@@ -31,7 +31,7 @@ TOKEN = re.compile(
       (?P<name> [A-Za-z_][A-Za-z0-9_]*+ (?![^\x00-\x7f]) )
     | (?P<number> [0-9]++ (?:\.(?!\.)[0-9]*+)? (?:[eE][+\-−]?[0-9]++)? )
       (?: {_BLANK}*+ (?P<unit> % | /c?m3(?!\w) | (?:{_UNIT})(?:/(?:{_UNIT}))?(?!\w) ) )?
-    | (?P<mark> \.\. | \+- | [-−+*/=,;(){{}}±] )
+    | (?P<mark> \.\. | \+- | ;++ | [-−+*/=,(){{}}±] )
     | (?P<newline> \r\n | \r | \n )
     | (?P<string> "[^"\r\n]*+"? )
     | (?P<comment> \#[^\r\n]*+ )
@@ -193,7 +193,8 @@ class _Scanner:
             )
             if word and last.end == start and odd.begins_a_name(self.source[end : end + 1]):
                 return self._hyphen(last, start)
-        return self._token(MARKS[text], text, start, end)
+        # Any number of semicolons in a row ends one statement.
+        return self._token(MARKS[text[0] if text[0] == ";" else text], text, start, end)
 
     def _hyphen(self, last: Token, start: int) -> Token:
         first, end = last.start, start
