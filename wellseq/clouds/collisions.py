@@ -5,16 +5,16 @@ Two rates.  Within one species (parallel against perpendicular), with T = (2 T_p
     dT_perp/dt = nu (T_par - T_perp),   nu = n sqrt(2kT/m) b^2 I(kbar)
     b = 2 q^2/(4 pi eps0 kT),   kbar = b/(sqrt2 r_c),   r_c = sqrt(kT/m)/Omega_c
 
-I = (sqrt(2 pi)/15) ln(1/(0.333 kbar)) up to kbar = 0.3; beyond, log-log through TABLE, joined to the
-formula at 0.3 (0.385, inside the table's 0.370 +- 0.023) so that the rate has no jump; above 100
-with exp(-(5/6)(3 pi kbar)^0.4), an extrapolation.  Between two species, light l and heavy h:
+I = (sqrt(2 pi)/15) ln(1/(0.333 kbar)) up to kbar = 0.3; beyond, log-log through TABLE, joined to
+the formula at 0.3 (0.385, inside the table's 0.370 +- 0.023) so that the rate has no jump; above
+100 with exp(-(5/6)(3 pi kbar)^0.4), an extrapolation.  Between two species, light l and heavy h:
 
     dT_h/dt = -nu_lh (T_h - T_l)
     nu_lh = (8 sqrt(2 pi)/3) n_l (q_l q_h/4 pi eps0)^2 lnL/(m_l m_h) (kT_h/m_h + kT_l/m_l)^(-3/2)
 
 Units: K, T, kg, 1/m3 in; 1/s and m out; charges in elementary charges.  Scalars throughout.
-Accuracy: I to the factor `collision_factor` says (4 to 17 % below kbar = 100); coefficients compared
-with printed ones in tests/clouds/test_collisions.py.
+Accuracy: I to the factor `collision_factor` says (4 to 17 % below kbar = 100); coefficients are
+compared with printed ones in tests/clouds/test_collisions.py.
 Source (from memory): Collisional equipartition rate for a magnetized pure electron plasma, Phys.
 Fluids B 4, 1156 (1992); Measurement of the anisotropic temperature relaxation rate in a pure
 electron plasma, Phys. Rev. Lett. 59, 2975 (1987); Plasma Formulary (2007), thermal equilibration.
@@ -84,7 +84,7 @@ def temperature_at_magnetisation_K(
 ) -> float:
     """The temperature in K at which kbar has this value, at B in T, mass in kg, charge in e."""
     at_one_kelvin = _magnetisation_at_one_kelvin(magnetic_field_T, mass_kg, charge_e)
-    return (at_one_kelvin / kbar) ** (2.0 / 3.0)
+    return math.pow(at_one_kelvin / kbar, 2.0 / 3.0)
 
 
 def _magnetisation_at_one_kelvin(field_T: float, mass_kg: float, charge_e: float) -> float:
@@ -95,7 +95,7 @@ def _magnetisation_at_one_kelvin(field_T: float, mass_kg: float, charge_e: float
 
 def suppression_exponent(kbar: float) -> float:
     """(5/6)(3 pi kbar)^(2/5): strongly magnetised rates fall with exp(-this); dimensionless."""
-    return (5.0 / 6.0) * (3.0 * math.pi * kbar) ** 0.4
+    return (5.0 / 6.0) * math.pow(3.0 * math.pi * kbar, 0.4)
 
 
 def collision_integral(kbar: float) -> float:
@@ -136,7 +136,7 @@ def anisotropy_rate_of(
     head = density_per_m3 * speed_m_per_s * closest_approach_m(1.0, charge_e) ** 2
 
     def rate_per_s(temperature_K: float) -> float:
-        fall = temperature_K**-1.5
+        fall = math.pow(temperature_K, -1.5)
         return head * fall * collision_integral(magnetised * fall)
 
     return rate_per_s
@@ -173,8 +173,8 @@ def stalling_K(
 ) -> float:
     """The temperature in K below which nu is less than a rate in 1/s, on the cold side of its peak.
 
-    n in 1/m3, B in T, mass in kg, charge in e.  nu peaks where kbar I(kbar) does, at kbar = 3.  NaN
-    when nu is below the rate even there; 0 K when it is above the rate down to the coldest valid T.
+    n in 1/m3, B in T, mass in kg, charge in e.  nu peaks where kbar I(kbar) does, at kbar = 3.
+    Infinity when nu is below the rate even there; 0 K when it is above it as far as it is valid.
     """
     magnetised = _magnetisation_at_one_kelvin(magnetic_field_T, mass_kg, charge_e)
     rate = anisotropy_rate_of(
@@ -183,9 +183,9 @@ def stalling_K(
         mass_kg=mass_kg,
         charge_e=charge_e,
     )
-    warm_K, cold_K = ((magnetised / kbar) ** (2.0 / 3.0) for kbar in (3.0, MAGNETISATION_MAX))
+    warm_K, cold_K = (math.pow(magnetised / kbar, 2.0 / 3.0) for kbar in (3.0, MAGNETISATION_MAX))
     if rate(warm_K) < rate_per_s:
-        return math.nan
+        return math.inf
     if rate(cold_K) > rate_per_s:
         return 0.0
     for _ in range(60):
@@ -262,4 +262,4 @@ def species_rate_per_s(
     spread2 = BOLTZMANN_J_PER_K * (heavy_K / heavy_mass_kg + light_K / light_mass_kg)
     head = 8.0 * math.sqrt(2.0 * math.pi) / 3.0 / (light_mass_kg * heavy_mass_kg)
     force2 = (charges_e2 * COULOMB_VM * ELEMENTARY_CHARGE_C) ** 2
-    return head * light_density_per_m3 * force2 * logarithm * spread2**-1.5
+    return head * light_density_per_m3 * force2 * logarithm * math.pow(spread2, -1.5)

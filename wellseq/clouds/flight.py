@@ -11,7 +11,7 @@ kinetic energy outside.
 Valid without collisions, without space charge (unless the table holds it), on the axis, and below
 a two-hundredth of the rest energy, where Newton's speed is 0.4 % too high.
 
-Shapes: particles (n,).  Units: m, m/s, s, eV, kg, C.
+Shapes: particles (n,).  Units: m, m/s, s, eV, kg, e.
 Accuracy: energy kept to 1e-3 of the depth at 200 steps per bounce, 1e-4 at 600; at least 1.5e7
 particle-steps per second; tests/clouds/test_flight.py.
 Source: kick-drift-kick: L. Verlet, Phys. Rev. 159, 98 (1967), from memory.
@@ -77,7 +77,7 @@ def fly(
     table: ForceTable,
     waves: Waveforms,
     mass_kg: float,
-    charge_C: float,
+    charge_e: float,
     z_m: FloatArray,
     speed_m_per_s: FloatArray,
     start_s: float,
@@ -90,7 +90,8 @@ def fly(
 
     `waves` must have the table's electrodes.  `leave_m`: places beyond which a particle has left
     for good; it is looked up every eight steps, and the time of its crossing is taken back along a
-    straight line.  Units m, m/s, s, kg, C.  Raises ValueError for shapes that do not match.
+    straight line.  Units m, m/s, s, kg, e
+    (with its sign).  Raises ValueError for shapes that do not match.
     """
     if waves.volts.shape[1] != table.slope.shape[0]:
         raise ValueError("waveforms and table must have the same electrodes")
@@ -103,7 +104,7 @@ def fly(
         missing = np.full(z_m.size, np.nan)
         side = np.zeros(z_m.size, np.int8)
         return Flown(missing, missing, missing, missing, side, 0, outside)
-    pilot = _Pilot(table, mass_kg, charge_C, z_m, speed_m_per_s, leave_m)
+    pilot = _Pilot(table, mass_kg, charge_e, z_m, speed_m_per_s, leave_m)
     for part in parts:
         pilot.through(part)
         if stop_when_empty and not pilot.swarm.who.size:
@@ -220,7 +221,7 @@ class _Pilot:
 
     table: ForceTable
     mass_kg: float
-    charge_C: float
+    charge_e: float
     z_m: FloatArray
     speed_m_per_s: FloatArray
     leave_m: tuple[float, float] | None
@@ -240,7 +241,8 @@ class _Pilot:
 
     def _kicks(self, volts: FloatArray, step_s: float) -> FloatArray:
         """Change of speed in nodes per step, in one step, at every node."""
-        size = -self.charge_C / self.mass_kg * step_s**2 / self.table.step_m
+        charge_C = self.charge_e * ELEMENTARY_CHARGE_C
+        size = -charge_C / self.mass_kg * step_s**2 / self.table.step_m
         force = size * (volts @ self.table.slope)
         # Beyond the table there is no force.
         force[0] = force[-1] = 0.0
@@ -294,8 +296,9 @@ class _Pilot:
         self.z_m[who] = table.start_m + table.step_m * place
         self.speed_m_per_s[who] = v = speed * (table.step_m / self.step_s)
         kinetic_eV = self.mass_kg / (2 * ELEMENTARY_CHARGE_C) * v**2
-        charges = self.charge_C / ELEMENTARY_CHARGE_C
-        self.energy_eV[who] = kinetic_eV + charges * table.potential(volts, 1).at(self.z_m[who])
+        self.energy_eV[who] = kinetic_eV + self.charge_e * table.potential(volts, 1).at(
+            self.z_m[who]
+        )
 
     def landed(self, volts: FloatArray) -> Flown:
         """All particles, with those still flying at these volts."""

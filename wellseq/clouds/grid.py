@@ -17,7 +17,7 @@ Accuracy: second order in both steps, tests/clouds/test_grid.py.
 from __future__ import annotations
 
 from dataclasses import dataclass
-from math import log, pi
+from math import pi
 
 import numpy as np
 
@@ -26,6 +26,9 @@ from wellseq.fields.hermite import FloatArray
 
 UNIFORM_RADII = 2.2
 """Rings are equally thick out to this many cloud radii."""
+RINGS = 26
+SLICES = 140
+RING_GROWTH, SLICE_GROWTH = 1.17, 1.17
 CELLS_MAX = 120_000
 
 
@@ -133,44 +136,52 @@ def grid_for(
     wall_radius_m: float,
     cloud_radius_m: float,
     fine_m: tuple[float, float],
+    detail_m: tuple[float, float],
     tube_m: tuple[float, float],
-    rings: int = 26,
-    slices: int = 170,
-    growth: float = 1.12,
+    rings: int = RINGS,
+    slices: int = SLICES,
 ) -> Grid:
     """A grid with `rings` equal rings out to 2.2 cloud radii and `slices` cells over `fine_m`.
 
-    Beyond both, cells grow by the factor `growth` at most, along z up to a sixteenth of the bore's
-    radius.  All in m.  Raises ValueError for a cloud, a fine part or a tube that does not fit, or a
-    grid of more than 120,000 cells.
+    Rings beyond are stretched out to the wall.  Along z cells grow up to a tenth of the bore's
+    radius over `detail_m`, which should hold the barriers, and up to a half beyond, to the ends of
+    the tube.  All in m.  Raises ValueError for a cloud that does not fit into the bore, spans not
+    inside one another, or a grid of more than 120,000 cells.
     """
-    low, high = fine_m
-    if not (0 < cloud_radius_m < wall_radius_m and tube_m[0] <= low < high <= tube_m[1]):
-        raise ValueError("the cloud must fit into the bore and the fine part into the tube")
+    spans = (tube_m[0], detail_m[0], fine_m[0], fine_m[1], detail_m[1], tube_m[1])
+    if not (0 < cloud_radius_m < wall_radius_m and fine_m[0] < fine_m[1]):
+        raise ValueError("the cloud must fit into the bore and have a length")
+    if list(spans) != sorted(spans):
+        raise ValueError("the fine part must lie in the detailed one, and that in the tube")
     reach = min(UNIFORM_RADII * cloud_radius_m, wall_radius_m)
-    thickness = reach / rings
     inner = np.linspace(0.0, reach, rings + 1)
-    outer = _stretched(wall_radius_m - reach, thickness, 1.0 + 1.6 * (growth - 1.0), np.inf)
+    outer = _stretched(wall_radius_m - reach, reach / rings, RING_GROWTH, np.inf)
     r_face = np.concatenate((inner, reach + outer))
     r_face[-1] = wall_radius_m
-    step = (high - low) / slices
-    longest = max(wall_radius_m / 16, step)
-    left = low - _stretched(low - tube_m[0], step, growth, longest)[::-1]
-    right = high + _stretched(tube_m[1] - high, step, growth, longest)
-    z_face = np.concatenate((left, np.linspace(low, high, slices + 1), right))
+    step = (fine_m[1] - fine_m[0]) / slices
+    left = _beside(fine_m[0] - detail_m[0], detail_m[0] - tube_m[0], step, wall_radius_m)
+    right = _beside(detail_m[1] - fine_m[1], tube_m[1] - detail_m[1], step, wall_radius_m)
+    middle = np.linspace(*fine_m, slices + 1)
+    z_face = np.concatenate((fine_m[0] - left[::-1], middle, fine_m[1] + right))
     if (z_face.size - 1) * (r_face.size - 1) > CELLS_MAX:
         raise ValueError(f"a grid of more than {CELLS_MAX} cells")
     return Grid(z_face, r_face, rings)
 
 
+def _beside(detail_m: float, rest_m: float, step_m: float, wall_radius_m: float) -> FloatArray:
+    """Faces beyond the fine part, counted from its end, in m."""
+    near = _stretched(detail_m, step_m, SLICE_GROWTH, max(wall_radius_m / 10, step_m))
+    last = float(np.diff(near, prepend=0.0)[-1]) if near.size else step_m
+    far = _stretched(rest_m, last, SLICE_GROWTH, max(wall_radius_m / 2, last))
+    return np.concatenate((near, detail_m + far))
+
+
 def _stretched(length_m: float, first_m: float, growth: float, longest_m: float) -> FloatArray:
-    """Faces (k,) from the end of the first cell to `length_m`, each cell longer than the last."""
-    if length_m <= 0.0:
+    """Faces (k,) that end at `length_m`, each cell longer than the last, up to `longest_m`."""
+    if length_m <= 1e-9 * first_m:
         return np.empty(0)
-    if length_m <= first_m:
-        return np.array([length_m])
-    sizes = [first_m]
-    total = first_m
+    sizes = [first_m * growth]
+    total = sizes[0]
     while total < length_m:
         sizes.append(min(sizes[-1] * growth, longest_m))
         total += sizes[-1]

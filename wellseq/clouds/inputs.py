@@ -47,5 +47,5 @@ def _words(name: str) -> str:
         at = words.index("per")
         words = words[: at - 1] if words[at - 1] in _UNITS else words[:at]
     elif len(words) > 1 and words[-1] in _UNITS:
-        words = words[:-1]
+        words = [*words[:-1], "temperature"] if words[-1] == "K" else words[:-1]
     return " ".join(words)

@@ -48,13 +48,13 @@ _RUNG_FACTOR = 4.0
 
 @dataclass(frozen=True, slots=True)
 class Charges:
-    """One cloud for the solver: `charge` (signed number of e), `number`, `thermal_eV`.
+    """One cloud for the solver: `charge_e` (signed number of e), `number`, `thermal_eV`.
 
     It lives in the cells `first` … `last` − 1 along z.  Exactly one of `mean_r2_m2` (⟨r²⟩),
     `pressure_V_m2` (κ) and `profile` (nr,), the number of particles at each radius, is given.
     """
 
-    charge: int
+    charge_e: int
     number: float
     thermal_eV: float
     first: int
@@ -101,7 +101,7 @@ class _Sum:
     def exponent(self, own_V: FloatArray, pressure: float) -> FloatArray:
         """g + ln V (cells)."""
         cloud = self.cloud
-        energy = cloud.charge * (self.vacuum_V + own_V[self.span])
+        energy = cloud.charge_e * (self.vacuum_V + own_V[self.span])
         if cloud.profile is None:
             energy = energy + pressure * self.r2
         return np.asarray(self.log_volume - energy / cloud.thermal_eV)
@@ -127,7 +127,7 @@ class _Sum:
     def products(self) -> FloatArray:
         """Weights (k,) of the outer products: q² N/θ."""
         counts = self.counts[self.counts > 0]
-        return np.asarray(self.cloud.charge**2 * counts / self.cloud.thermal_eV)
+        return np.asarray(self.cloud.charge_e**2 * counts / self.cloud.thermal_eV)
 
     def change(self, log_shares: FloatArray, shares: FloatArray, move: FloatArray) -> float:
         """Σ N θ ln⟨exp(u)⟩ for a change u of the exponent that has no mean."""
@@ -269,8 +269,8 @@ def _newton_step(
         cloud = item.cloud
         cells = slice(cloud.first * nr, cloud.last * nr)
         held = share * item.counts
-        gradient[item.span] -= cloud.charge * held
-        bands[0, cells] += (cloud.charge**2 / cloud.thermal_eV * held).ravel()
+        gradient[item.span] -= cloud.charge_e * held
+        bands[0, cells] += (cloud.charge_e**2 / cloud.thermal_eV * held).ravel()
         part = np.zeros((bands.shape[1], (item.counts > 0).sum()))
         part[cells] = item.columns(share)
         columns.append(part)
@@ -278,7 +278,7 @@ def _newton_step(
         if item.free:
             mean = float((share * item.r2).sum())
             border = np.zeros((bands.shape[1], 1))
-            lean = cloud.charge * cloud.number / cloud.thermal_eV * share * (item.r2 - mean)
+            lean = cloud.charge_e * cloud.number / cloud.thermal_eV * share * (item.r2 - mean)
             border[cells, 0] = lean.ravel()
             borders.append(border)
             spread = float((share * (item.r2 - mean) ** 2).sum())
@@ -325,7 +325,7 @@ def _search(
     moves: list[Any] = []
     for item, share, pressure in zip(sums, shares, step.pressure, strict=True):
         cloud = item.cloud
-        energy = cloud.charge * step.own_V[item.span]
+        energy = cloud.charge_e * step.own_V[item.span]
         if item.free:
             energy = energy + pressure * item.r2
         moves.append(item.centred(share, -energy / cloud.thermal_eV))

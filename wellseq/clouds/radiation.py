@@ -35,7 +35,7 @@ def radiation_rate_per_s(
 
 
 def time_constant_s(*, magnetic_field_T: float, mass_kg: float, charge_e: float = 1.0) -> float:
-    """tau_T in s at B in T, mass in kg, charge in e: three degrees of freedom share what two lose."""
+    """tau_T in s at B in T, mass in kg, charge in e: three degrees share what two lose."""
     return 1.5 / radiation_rate_per_s(
         magnetic_field_T=magnetic_field_T, mass_kg=mass_kg, charge_e=charge_e
     )

@@ -25,7 +25,7 @@ WORK_MAX = 100_000
 
 @dataclass(frozen=True, slots=True)
 class Condition:
-    """Something to watch: the path crosses it where `value` falls through zero (or starts below)."""
+    """Something to watch: crossed where `value` falls through zero, or starts below it."""
 
     value: Callable[[float, State], float]
     ends: bool = False
@@ -86,7 +86,9 @@ def solve(
         return Path(times, first[:, None], tuple(0.0 if m else math.nan for m in met), ended, 0, "")
     counted = _Counted(slopes, work_max)
     try:
-        found = _integrate(counted, first, duration_s, conditions, (relative, absolute), longest_step_s)
+        found = _integrate(
+            counted, first, duration_s, conditions, (relative, absolute), longest_step_s
+        )
     except _TooMuchWork:
         return _unfinished(first, len(met), counted, f"more than {work_max} evaluations")
     if found.status < 0 or not np.isfinite(found.y).all():
@@ -97,7 +99,9 @@ def solve(
     )
     ended = -1
     if found.status == 1:
-        last = [n for n, watched in enumerate(conditions) if watched.ends and len(found.t_events[n])]
+        last = [
+            n for n, watched in enumerate(conditions) if watched.ends and len(found.t_events[n])
+        ]
         ended = min(last, key=lambda n: found.t_events[n][0])
     return Path(found.t, found.y, crossings, ended, counted.work, "")
 

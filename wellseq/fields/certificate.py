@@ -67,17 +67,19 @@ class _Region:
         value = weights @ self.nodes
         node = int(value.argmax())
         best, place, line = float(value[node]), float(node), self.nodes[:, node]
-        if value.size > 1:
-            control = (weights @ self.flat).reshape(6, -1)
-            bound = control.max(axis=0)
-            candidates = np.flatnonzero(bound > best + _DUST_V)
-            for i in candidates[np.argsort(-bound[candidates], kind="stable")].tolist():
-                if bound[i] <= best + _DUST_V:
-                    break
-                fraction, top = _top(control[:, i])
-                if top > best:
-                    best, place = top, i + fraction
-                    line = self.controls[:, :, i] @ np.array(_weights(fraction))
+        if value.size == 1:
+            return line, self.start_m
+        control = (weights @ self.flat).reshape(6, -1)
+        bound = control.max(axis=0)
+        # The most promising interval first: its top usually beats the bounds of all others.
+        i = int(bound.argmax())
+        while bound[i] > best + _DUST_V:
+            fraction, top = _top(control[:, i])
+            if top > best:
+                best, place = top, i + fraction
+                line = self.controls[:, :, i] @ np.array(_weights(fraction))
+            bound[i] = -np.inf
+            i = int(bound.argmax())
         return line, self.start_m + place * self.step_m
 
 
@@ -107,40 +109,39 @@ def _top(control: FloatArray) -> tuple[float, float]:
         bend = 2 * c2 + t * (6 * c3 + t * (12 * c4 + t * 20 * c5))
         if bend >= 0.0:
             break
-        t = min(high, max(low, t - slope / bend))
+        last, t = t, min(high, max(low, t - slope / bend))
+        if abs(t - last) < 1e-9:
+            break
     value = c0 + t * (c1 + t * (c2 + t * (c3 + t * (c4 + t * c5))))
     return (t, value) if value >= grid[at] else (at / 8, float(grid[at]))
 
 
 def depth_oracle(
-    field: Field,
-    vectors: FloatArray,
-    well: Region | float,
-    barrier: Region,
+    field: Field, vectors: FloatArray, well: Region | float, barrier: Region
 ) -> Oracle:
     """The supporting line of D(p) at any p, for `vectors` (n + 1, ne): base, then moves, of U (V).
 
     `well` is a region, or a fixed level of U in V in place of the bottom.
     """
-    top = _region(field, vectors, barrier, 1)
-    if isinstance(well, float):
-        level = np.zeros(vectors.shape[0])
-        level[0] = -well
+    return _above(_floor(field, vectors, well), _region(field, vectors, barrier, 1))
 
-        def above_level(progress: FloatArray) -> Line:
-            line, z_m = top.peak(np.concatenate(((1.0,), progress)))
-            return Line(line + level, z_m, float("nan"))
 
-        return above_level
-    bottom = _region(field, vectors, well, -1)
-
-    def above_bottom(progress: FloatArray) -> Line:
+def _above(floor: _Region | float, top: _Region) -> Oracle:
+    def above(progress: FloatArray) -> Line:
         weights = np.concatenate(((1.0,), progress))
         line, barrier_m = top.peak(weights)
-        floor, well_m = bottom.peak(weights)
-        return Line(line + floor, barrier_m, well_m)
+        if isinstance(floor, float):
+            lowered = line.copy()
+            lowered[0] -= floor
+            return Line(lowered, barrier_m, float("nan"))
+        bottom, well_m = floor.peak(weights)
+        return Line(line + bottom, barrier_m, well_m)
 
-    return above_bottom
+    return above
+
+
+def _floor(field: Field, vectors: FloatArray, well: Region | float) -> _Region | float:
+    return well if isinstance(well, float) else _region(field, vectors, well, -1)
 
 
 def _region(field: Field, vectors: FloatArray, region: Region, sense: int) -> _Region:
@@ -172,15 +173,17 @@ def certify(
     kept = np.flatnonzero(np.any(moves != 0.0, axis=1))
     vectors = sign * np.vstack((base[None, :], moves[kept]))
     slack_V = 2.0 * field.error_V_per_V * float(np.abs(vectors).sum())
-    floor = well if bottom is None else float(bottom)
+    known = np.isfinite(vectors).all() and (bottom is None or np.isfinite(bottom))
+    floor = _floor(field, vectors, well if bottom is None else float(bottom)) if known else 0.0
 
     def bound(barrier: Region | None) -> SideBound | None:
         if barrier is None:
             return None
-        if not np.isfinite(vectors).all() or (bottom is not None and not np.isfinite(bottom)):
+        if not known:
             nan = float("nan")
             return SideBound(nan, nan, (nan,) * len(moves), nan, nan)
-        found = least(depth_oracle(field, vectors, floor, barrier), kept.size, tolerance_V)
+        oracle = _above(floor, _region(field, vectors, barrier, 1))
+        found = least(oracle, kept.size, tolerance_V)
         progress = np.zeros(len(moves))
         progress[kept] = found.progress
         return SideBound(

@@ -240,39 +240,58 @@ class _Piece:
             rising, concave = self.slope_low[edge:] > 0.0, self.concave[edge:]
         else:
             rising, concave = self.slope_high[:edge][::-1] < 0.0, self.concave[:edge][::-1]
-        reach, shoulder = self._outward(rising | concave, edge, outward)
+        reach, ripple_V = self._outward(rising | concave, edge, outward)
         node = edge + outward * reach
         beyond = self.falls if outward > 0 else self.rises
         return _Side(
             edge=node,
             rise=edge + outward * _leading(rising),
             closed=node in (0, beyond.size - 1) or bool(beyond[node]),
-            ripple_V=self.ripple_V if shoulder else 0.0,
+            ripple_V=ripple_V,
         )
 
-    def _outward(self, passable: BoolArray, edge: int, outward: int) -> tuple[int, bool]:
-        """How many intervals can be passed, and whether a flat shoulder was among them."""
-        reach, shoulder = _leading(passable), False
-        while reach < passable.size and self._dip(edge, outward, reach) <= self.ripple_V:
-            shoulder = True
-            reach += 1
+    def _outward(self, passable: BoolArray, edge: int, outward: int) -> tuple[int, float]:
+        """How many intervals can be passed, and how deep the dips of flat shoulders are (V)."""
+        part, turn = (slice(edge, None), 1) if outward > 0 else (slice(edge), -1)
+        levels = [(low[part][::turn], high[part][::turn]) for low, high in self.levels]
+        dips = [np.maximum.accumulate(high) - low for low, high in levels]
+        dip_V = np.max(dips, axis=0)
+        reach, ripple_V = _leading(passable), 0.0
+        while reach < passable.size:
+            run, worst_V = _leading(dip_V[reach:] <= self.ripple_V), np.inf
+            while run:
+                tilt_V = self._tilt(levels, edge, outward, reach, reach + run)
+                worst_V = float(dip_V[reach : reach + run].max()) + tilt_V
+                if worst_V <= self.ripple_V:
+                    break
+                run //= 2
+            if not run:
+                break
+            ripple_V = max(ripple_V, worst_V)
+            reach += run
             reach += _leading(passable[reach:])
-        return reach, shoulder
+        return reach, ripple_V
 
-    def _dip(self, edge: int, outward: int, reach: int) -> float:
-        """How far below the highest point so far U can be on the interval number `reach` (V)."""
-        here = edge + reach if outward > 0 else edge - reach - 1
-        first, last = (edge, here + 1) if outward > 0 else (here, edge)
-        worst, near = 0.0, here
-        for low, high in self.levels:
-            span = high[first:last]
-            worst = max(worst, float(span.max() - low[here]))
-            # Points lower than this cannot overtop the interval whatever the deviations are.
-            tall = np.flatnonzero(span > low[here] + self.ripple_V - self.deviation.sum())
-            if tall.size:
-                near = min(near, first + int(tall[0])) if outward > 0 else near
-                near = max(near, first + int(tall[-1])) if outward < 0 else near
-        return worst + self._sway(min(near, here), max(near, here) + 1)
+    def _tilt(
+        self,
+        levels: list[tuple[FloatArray, FloatArray]],
+        edge: int,
+        outward: int,
+        first: int,
+        last: int,
+    ) -> float:
+        """How much deviations can lower the intervals first … last − 1 against those before (V).
+
+        Intervals count outward from the edge; those too low to overtop them do not count.
+        """
+        near = first
+        for low, high in levels:
+            least = low[first:last].min() + self.ripple_V - self.deviation.sum()
+            tall = high[:last] > least
+            near = min(near, int(tall.argmax())) if tall.any() else near
+        if outward > 0:
+            return self._sway(edge + near, edge + last)
+        return self._sway(edge - last, edge - near)
 
 
 def _touching(interval: BoolArray) -> BoolArray:

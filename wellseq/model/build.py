@@ -20,6 +20,8 @@ from wellseq.model.library import Chain, Library, beside, why_not_relative
 from wellseq.model.patterns import settled
 from wellseq.model.plan import STEPS_MAX, Body, Pick, Planner, TooLarge
 from wellseq.model.reporter import Reporter
+from wellseq.model.rule_files import read_rules
+from wellseq.model.rulebook import Rulebook
 from wellseq.model.scope import SORTS, FileScope, Names
 from wellseq.model.sequence import CloudDeclared, Sequence, SourceFile
 from wellseq.model.size import LeastSize
@@ -37,13 +39,15 @@ class Built:
 
     `sequence` is None for a file that holds none, which is a library of patterns and procedures,
     and where the trap could not be read; with mistakes it lacks the steps that have them.
-    `sources` are all files that were read: this one, the trap's, used ones.
+    `sources` are all files that were read: this one, the trap's, rules, used ones.  `rules` are the
+    interlock rules for this trap, None where there is no trap.
     """
 
     sequence: Sequence | None
     trap: Trap | None
     mistakes: tuple[Mistake, ...]
     sources: tuple[SourceFile, ...]
+    rules: Rulebook | None = None
 
 
 def build(
@@ -99,6 +103,7 @@ class _Build:
         if content is None:
             content = tree.source.encode("utf-8", "surrogatepass")
         self.sources = [SourceFile(tree.file, content)]
+        self.rules: Rulebook | None = None
 
     def run(self) -> Built:
         """Header, trap, names, steps; then what only the whole file can tell."""
@@ -113,7 +118,7 @@ class _Build:
         mistakes = self.reporter.listed([source.shown for source in self.sources])
         sources = tuple(self.sources)
         if trap is None or header.sequence is None:
-            return Built(None, trap, mistakes, sources)
+            return Built(None, trap, mistakes, sources, self.rules)
         sequence = Sequence(
             name=_name(header.sequence),
             file=self.tree.file,
@@ -132,7 +137,7 @@ class _Build:
             end=_end(header.sequence),
             each_values=self._each_values(),
         )
-        return Built(sequence, trap, mistakes, sources)
+        return Built(sequence, trap, mistakes, sources, self.rules)
 
     def _trap(self, header: Header) -> tuple[Trap | None, Path | None]:
         if header.trap is None:
@@ -156,6 +161,11 @@ class _Build:
         if trap is None:
             return None, None
         self.sources.append(SourceFile(trap.file, trap.source.encode("utf-8")))
+        read = read_rules(trap, path)
+        for mistake in read.mistakes:
+            self.reporter.add(mistake)
+        self.sources.extend(read.sources)
+        self.rules = read.book
         return trap, Path(os.path.realpath(path))
 
     def _names(self, header: Header, trap: Trap | None, trap_path: Path | None) -> FileScope:

@@ -33,6 +33,8 @@ PICOSECOND = Fraction(1, 10**12)
 GAIN = bounds(least="1e-6", most="1e6")
 SECTORS = (1, 4, 6, 8)
 """One piece, or a ring whose dipole drive turns one way only (at least four, an even number)."""
+ROLES = ("detector", "door", "shutter", "vacuum")
+"""What a digital line can be to the interlock rules that come with the house."""
 
 Name = Annotated[str, name()]
 Mention = Annotated[str, mention()]
@@ -210,7 +212,11 @@ class Switch(Part):
 
 
 class Line(Part):
-    """A digital line: an output that the table sets, or an input that `expect` may name."""
+    """A digital line: an output that the table sets, or an input that `expect` may name.
+
+    `role` says what it is to the interlock rules, `safe` in which of its states that thing is safe;
+    both are empty where the trap file does not say.
+    """
 
     name: Name
     states: Annotated[
@@ -220,6 +226,8 @@ class Line(Part):
     ]
     initial: Mention
     kind: Annotated[Literal["output", "input"], choice("output", "input")] = "output"
+    role: Annotated[str, choice(*ROLES)] = ""
+    safe: Mention = ""
     clock_s: Clock = Field(alias="clock")
 
     @model_validator(mode="before")

@@ -17,6 +17,7 @@ from wellseq.model.written import choice, fault, listing, real, sound, text
 
 Tesla = Annotated[float, real("T", bounds("T", least="-100", most="100", nonzero=True))]
 Point = Annotated[tuple[Metres, Tesla], listing(2, 2, '["0 mm", "1.6 T"]')]
+RULES_FILES_MAX = 16
 LATER_ENDS = {"closed": 'closed ends are not understood yet: only ends = "open"'}
 
 
@@ -94,9 +95,15 @@ class Bore(Part):
 
 
 class Site(Part):
-    """What the cautions must speak of; an empty text was not stated, so it counts as unknown."""
+    """What the cautions must speak of; an empty text was not stated, so it counts as unknown.
+
+    `rules` are the laboratory's own files of interlock rules, relative to the trap file.
+    """
 
     magnet: Flag = True
     cryogen: Annotated[str, text(200)] = ""
     source: Annotated[str, text(200)] = ""
     notes: Annotated[str, text()] = ""
+    rules: Annotated[
+        tuple[Annotated[str, text(1000)], ...], listing(0, RULES_FILES_MAX, '["our.rules"]')
+    ] = ()

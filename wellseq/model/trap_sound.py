@@ -105,7 +105,7 @@ def faults_of(entries: Sequence[Entry], pairs: Numbered, rest: Sequence[Rest]) -
             what for what, has in (("electrode", stack), ("output", outputs)) if not has
         ]:
             yield Fault((missing,), "syntax", f"the trap has no {missing}", f"write [[{missing}]]")
-    yield from _initials(entries)
+    yield from _states(entries)
     yield from _pairs(stack, pairs)
     yield from _rests(stack, outputs, rest)
 
@@ -242,19 +242,26 @@ def _unused(outputs: Sequence[Entry], used: set[str], strays: list[str]) -> Iter
             yield Fault((*entry.path, "name"), "name-unused", message, hint)
 
 
-def _initials(entries: Sequence[Entry]) -> Iterator[Fault]:
+def _states(entries: Sequence[Entry]) -> Iterator[Fault]:
+    """The states that lines begin in and are safe in; a role goes with a safe state."""
     for entry in entries:
         line = entry.part
-        if isinstance(line, Line) and line.initial not in line.states:
-            message = f"line {quoted(line.name)} has no state {quoted(line.initial)}"
-            yield Fault(
-                (*entry.path, "initial"),
-                "unknown-name",
-                message,
-                word=line.initial,
-                known=line.states,
-                what="states",
-            )
+        if not isinstance(line, Line):
+            continue
+        for key, state in (("initial", line.initial), ("safe", line.safe)):
+            if state not in line.states and (state or key == "initial"):
+                message = f"line {quoted(line.name)} has no state {quoted(state)}"
+                yield Fault(
+                    (*entry.path, key),
+                    "unknown-name",
+                    message,
+                    word=state,
+                    known=line.states,
+                    what="states",
+                )
+        if line.role and not line.safe:
+            message = f"line {quoted(line.name)} has a role and does not say in which state it is safe"
+            yield Fault((*entry.path, "role"), "syntax", message, f'write safe = "{line.states[0]}"')
 
 
 def _pairs(stack: Sequence[Entry], pairs: Numbered) -> Iterator[Fault]:

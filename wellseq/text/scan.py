@@ -7,7 +7,7 @@ Columns count characters; lines end at LF, CRLF and CR only.
 from __future__ import annotations
 
 import re
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
 from functools import lru_cache
 
 from wellseq.base.names import RESERVED
@@ -50,20 +50,24 @@ _KINDS = {**dict.fromkeys(RESERVED, "CLAUSE"), "because": "BECAUSE", "allow": "_
 _exact = lru_cache(maxsize=4096)(read_number)
 
 
-def scan(source: str, mistakes: Mistakes) -> Iterator[Token]:
+def scan(
+    source: str, mistakes: Mistakes, more_marks: Mapping[str, str] | None = None
+) -> Iterator[Token]:
     """All tokens of a text without its byte order mark; comments and blanks leave none.
 
+    `more_marks` are single signs that have a meaning in this kind of file only, with their types.
     A token that is wrong has its mistake in `mistakes` and comes out with the type BAD.
     """
-    return _Scanner(source, mistakes).tokens()
+    return _Scanner(source, mistakes, more_marks or {}).tokens()
 
 
 class _Scanner:
     """Where the scan is: the offset, the line, the offset of the line's start, the last tokens."""
 
-    def __init__(self, source: str, mistakes: Mistakes) -> None:
+    def __init__(self, source: str, mistakes: Mistakes, more_marks: Mapping[str, str]) -> None:
         self.source = source
         self.mistakes = mistakes
+        self.more_marks = more_marks
         self.file = mistakes.file
         self.offset = 0
         self.line = 1
@@ -225,6 +229,8 @@ class _Scanner:
 
     def _other(self, match: re.Match[str]) -> Token:
         start = match.start("other")
+        if match["other"] in self.more_marks:
+            return self._token(self.more_marks[match["other"]], match["other"], start, start + 1)
         if odd.begins_a_name(self.source[start]):
             return self._word(start, odd.word_end(self.source, start))
         end, message, hint = odd.explain(self.source, start)
