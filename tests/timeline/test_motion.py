@@ -186,6 +186,14 @@ def test_the_lag_is_carried_into_the_next_block():
     assert fresh.lag_V[column] == 0
 
 
+def test_the_stray_of_the_last_rows_is_carried_through_the_filter():
+    timeline, shipped = table("ramp { E2 = 40 V } over 100 ms\nawait bunch\nhold for 1 ms")
+    carry = Carry()
+    list(segments(timeline.trap, shipped.blocks[0], carry))
+    after = next(iter(segments(timeline.trap, shipped.blocks[1], carry)))
+    assert after.lag_V[columns(timeline)["E2"]] >= shipped.blocks[0].strays[0].volts > 0.01
+
+
 def test_a_delay_counts_as_slope_times_delay():
     timeline, (ramp,) = cut("ramp { E3 = 10 V } over 100 us")
     assert ramp.lag_V[columns(timeline)["E3"]] == pytest.approx(0.1)

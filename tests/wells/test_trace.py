@@ -1,6 +1,7 @@
 """Clouds come, stay, merge, are lost, are let out: what the trace says of each."""
 
 import itertools
+import math
 
 import pytest
 from tracing import FIELDS, follow, held, troubles
@@ -174,6 +175,16 @@ def test_an_evaporation_lowers_the_floor_until_the_well_is_deepened():
     assert wells.ways_out[0].climb_V == 0.0
 
 
+def test_the_floor_rises_again_at_the_end_of_the_ramp_that_deepens():
+    """Without a hold between them the second ramp answers for the common floor."""
+    _, _, wells = follow(
+        EVAPORATE + "ramp { E7 = -60 V } over 1 s\nramp { E7 = -21 V } over 1 s\nhold for 1 s"
+    )
+    last = held(wells, "slow")[-1]
+    assert last.floor_V[0] == 0.5
+    assert last.certified_V < 0.5
+
+
 def test_the_vacuum_depth_follows_its_path_all_along():
     timeline, _, _wells = follow(EVAPORATE)
     field = FIELDS[0]
@@ -209,6 +220,17 @@ def test_a_kick_takes_the_light_cloud_and_leaves_the_heavy():
     assert max(one.end_s for one in held(wells, "slow")) > 2
     assert wells.ways_out[0].climb_V == 0.0
     assert follow(text.replace("{}", "-50"))[2].ways_out[0].climb_V > 5
+
+
+def test_a_kick_while_something_else_moves_is_not_examined():
+    both = "begin with {} in {{ E3, E7 = -60 V; E4..E6 = -20 V; others = 0 V }} at E5\n"
+    lanes = (
+        "alongside {{ lane {{ kick cold through E3 to 0 V for 2 us keeping slow }}"
+        " lane {{ ramp {{ E9 = 5 V }} over {} }} }}\nhold for 1 s"
+    )
+    text = both.format("cold") + both.format("slow") + "hold for 1 s\n"
+    assert math.isnan(follow(text + lanes.format("1 s"))[2].ways_out[0].climb_V)
+    assert follow(text + lanes.format("1 us"))[2].ways_out[0].climb_V == 0.0
 
 
 @pytest.mark.parametrize(

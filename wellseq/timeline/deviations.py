@@ -124,6 +124,13 @@ class Deviations:
             noise[column] = max(noise[column], error.noise_V)
         return stray, lag, half, calibration, noise
 
+    def close(self) -> None:
+        """The block is over: what its rows strayed by goes on through the filters."""
+        for name, stray_V in self._stray_before.items():
+            if stray_V > 0:
+                behind_V = self.carry.behind_V.get(name, 0.0)
+                self.carry.behind_V[name] = behind_V + stray_V
+
     def _moved(
         self, name: str, piece: Piece | None, start_s: Fraction, end_s: Fraction
     ) -> tuple[float, float]:

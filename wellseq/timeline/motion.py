@@ -203,6 +203,7 @@ class _Walk:
                 spans += 1
             yield self._segment(start, end, number, running, swinging)
         self._finish(running, swinging, times[-1])
+        self.deviations.close()
 
     def _finish(
         self,

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -12,6 +13,7 @@ from wellseq.fields.following import Located, locate
 from wellseq.fields.inverse import Side, way_out
 from wellseq.fields.minima import extrema
 from wellseq.model import effects
+from wellseq.timeline.motion import Segment
 from wellseq.timeline.timeline import Event
 from wellseq.wells.diagnosis import under
 from wellseq.wells.living import Bunch, Well
@@ -64,7 +66,7 @@ class Arrivals:
             case effects.Released():
                 self._check_release(event, event.effect, vector)
             case effects.Kicked():
-                self._after_kick(event.effect, vector)
+                self._after_kick(event, event.effect, vector)
             case effects.Evaporated():
                 self._check_way_out(event, event.effect, vector)
             case effects.Assumed():
@@ -203,8 +205,11 @@ class Arrivals:
         climb = climb_out(self.tracing.field, sign, vector, z_m, side)
         self._way(event, effect.cloud, climb)
 
-    def _after_kick(self, effect: effects.Kicked, vector: Vector) -> None:
+    def _after_kick(self, event: Event, effect: effects.Kicked, vector: Vector) -> None:
         living = self.tracing.living
+        if self._kicking.pop(event.number, None) is not None:
+            # Something else moved all the while, so that the open way was never seen at rest.
+            self._way(event, effect.light, math.nan)
         well = living.well_of(effect.light)
         if well is None:
             return
@@ -214,15 +219,15 @@ class Arrivals:
             well.z_m = found.z_m
         living.drop(effect.light)
 
-    def while_open(self, number: int, vector: Vector) -> None:
-        """A kick stands open at these voltages: the light cloud must find its way out."""
-        kicking = self._kicking.pop(number, None)
-        if kicking is None:
-            return
-        event, effect, well = kicking
-        side = self._side(effect.through, well.z_m)
-        climb = climb_out(self.tracing.field, well.charge_sign, vector, well.z_m, side)
-        self._way(event, effect.light, climb)
+    def while_open(self, segment: Segment) -> None:
+        """Nothing moves: the light cloud of a kick that stands open must find its way out."""
+        for number, (event, effect, well) in list(self._kicking.items()):
+            if not event.start_s < segment.start_s < segment.end_s < event.end_s:
+                continue
+            del self._kicking[number]
+            side = self._side(effect.through, well.z_m)
+            climb = climb_out(self.tracing.field, well.charge_sign, segment.base, well.z_m, side)
+            self._way(event, effect.light, climb)
 
     def _lower(self, event: Event, effect: effects.Evaporated) -> None:
         well = self._needed(event, effect.cloud)

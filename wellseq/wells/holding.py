@@ -87,6 +87,11 @@ class Hold:
     right: SideDepth
     trap_V: float
 
+    @property
+    def certified_V(self) -> float:
+        """The lesser of the two sides' certified depths, V."""
+        return min(self.left.certified_V, self.right.certified_V)
+
 
 @dataclass(frozen=True, slots=True)
 class Lost:

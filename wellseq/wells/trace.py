@@ -7,6 +7,7 @@ A bunch that is known by its energy alone is held by its gates, its depth counte
 
 from __future__ import annotations
 
+from dataclasses import replace
 from itertools import combinations
 
 from wellseq.fields.field import Field
@@ -93,7 +94,7 @@ class Tracing:
     def _segment(self, segment: Segment) -> None:
         spans: dict[int, tuple[float, float]] = {}
         if len(segment.moves) == 0:
-            self.arrivals.while_open(segment.number, segment.base)
+            self.arrivals.while_open(segment)
         for well in list(self.living.wells):
             if well.paused or well not in self.living.wells:
                 continue
@@ -108,28 +109,29 @@ class Tracing:
         """Prove one well through a segment; returns the stretch of axis (m) that its core swept."""
         floor_V = self._floor(well)
         swept: list[float] = []
-        last: Hold | None = None
         for result in self.holding.hold(well.charge_sign, well.z_m, segment, floor_V):
             if isinstance(result, Lost):
                 self._lost(well, segment, result)
                 return None
             self._keep(well, segment, result, floor_V)
-            well.z_m, well.core_m, last = result.to_m, result.well_m, result
+            well.z_m, well.core_m = result.to_m, result.well_m
             swept += result.well_m
-        if last is not None and well.lowered_V is not None:
-            self._raise_floor(well, segment, last)
+        if well.lowered_V is not None:
+            self._raise_floor(well, segment)
         return min(swept), max(swept)
 
     def _floor(self, well: Well) -> float:
         return self.margins.depth_V if well.lowered_V is None else well.lowered_V
 
-    def _raise_floor(self, well: Well, segment: Segment, last: Hold) -> None:
+    def _raise_floor(self, well: Well, segment: Segment) -> None:
         """A well deepened above the common floor again answers for the common floor again."""
-        still = len(segment.moves) == 0
-        deep = min(last.left.certified_V, last.right.certified_V) >= self.margins.depth_V
-        evaporating = segment.number in self.arrivals.evaporating
-        if still and deep and not evaporating:
-            well.lowered_V = None
+        if segment.number in self.arrivals.evaporating:
+            return
+        at_end = replace(segment, base=segment.end(), moves=segment.moves[:0])
+        for result in self.holding.hold(well.charge_sign, well.z_m, at_end, self._floor(well)):
+            deep = isinstance(result, Hold) and result.certified_V >= self.margins.depth_V
+            if deep:
+                well.lowered_V = None
 
     def _keep(self, well: Well, segment: Segment, hold: Hold, floor_V: float) -> None:
         for cloud in well.clouds:
