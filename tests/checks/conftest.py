@@ -16,6 +16,7 @@ from wellseq.base.finding import Finding, Mistake, Origin
 from wellseq.base.place import Place
 from wellseq.checks.case import Case
 from wellseq.checks.judging import check, judge
+from wellseq.model.rulebook import Rulebook
 from wellseq.model.sequence import Allowed, CloudDeclared
 from wellseq.model.sequence import Sequence as Played
 from wellseq.model.species import species
@@ -30,6 +31,7 @@ from wellseq.model.trap import (
     Trap,
     Trigger,
 )
+from wellseq.rules.rulings import Rulings
 from wellseq.timeline.ship import ship
 from wellseq.timeline.shipped import Rounding, Shipped, ShippedBlock, Stray
 from wellseq.timeline.timeline import (
@@ -47,6 +49,7 @@ from wellseq.wells.wells import Held, Losses, SideDepth, Wells
 US = Fraction(1, 10**6)
 NS = Fraction(1, 10**9)
 NO_WELLS = Wells((), (), (), (), 0.0)
+NO_RULES, NO_RULINGS = Rulebook(), Rulings()
 
 
 class Maker:
@@ -182,6 +185,8 @@ class Maker:
         blocks: Sequence[Block] | None = None,
         *,
         wells: Wells | None = NO_WELLS,
+        rules: Rulebook | None = NO_RULES,
+        rulings: Rulings | None = NO_RULINGS,
         shipped: Shipped | None = None,
         labels: dict[int, str] | None = None,
         mistakes: Sequence[Mistake] = (),
@@ -203,6 +208,8 @@ class Maker:
             timeline=timeline,
             shipped=shipped or ship(timeline),
             wells=wells,
+            rules=rules,
+            rulings=rulings,
         )
 
     def shipped(

@@ -4,7 +4,7 @@ import math
 
 import pytest
 
-from wellseq.checks.numbers import amount
+from wellseq.checks.numbers import amount, stretch
 
 
 @pytest.mark.parametrize(
@@ -26,3 +26,11 @@ from wellseq.checks.numbers import amount
 )
 def test_four_figures_and_a_prefix(value, unit, text):
     assert amount(value, unit) == text
+
+
+def test_a_stretch_of_time_says_when_and_how_long():
+    assert stretch(2.0335, 2.03351) == "2.0335 s, for 10 us"
+    assert stretch(2.03351, 2.0335) == "2.0335 s, for 10 us"
+    assert stretch(0.0, 0.0) == "0 s"
+    assert stretch(12.25, 12.25) == "12.25 s"
+    assert stretch(1e-6, 1e-6) == "0.000001 s"

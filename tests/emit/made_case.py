@@ -14,9 +14,11 @@ from wellseq.base.place import Place
 from wellseq.checks.case import Case
 from wellseq.checks.judging import Cleared, check_names, clear
 from wellseq.model.effects import Assumed
+from wellseq.model.rulebook import Rulebook
 from wellseq.model.sequence import Allowed, Sequence, SourceFile
 from wellseq.model.trap import Trap
 from wellseq.model.trap_file import trap_from
+from wellseq.rules.rulings import Rulings
 from wellseq.timeline.ship import ship
 from wellseq.timeline.timeline import (
     Block,
@@ -214,14 +216,18 @@ def _caught(run: Block) -> Block:
     )
 
 
-def side(certified_V: float) -> SideDepth:
+LEFT, WELL, RIGHT = (0.006, 0.034), (0.034, 0.042), (0.042, 0.1)
+"""The regions of the claim, m: the well is under R3 and G4, at 20 V for electrons."""
+
+
+def side(certified_V: float, region_m: tuple[float, float]) -> SideDepth:
     """One side of a claim, half a volt taken off."""
     losses = Losses(calibration_V=0.3, noise_V=0.2)
-    return SideDepth(certified_V, certified_V + 0.6, losses, 0.002, 0.03, 0.015, (0.01, 0.03))
+    return SideDepth(certified_V, certified_V + 0.6, losses, 0.002, 0.0136, 0.037, region_m)
 
 
 def wells() -> Wells:
-    """One cloud held for the whole run."""
+    """One cloud held while C1 and C2 begin to move: 8.33 V and 17.4 V deep at the end."""
     held = Held(
         "cool_e",
         -1,
@@ -229,11 +235,11 @@ def wells() -> Wells:
         MILLI,
         3 * MILLI,
         1,
-        (0.012, 0.018),
-        0.0,
-        0.053,
-        side(8.0),
-        side(3.5),
+        WELL,
+        0.037,
+        0.037,
+        side(8.0, LEFT),
+        side(3.5, RIGHT),
         3.5,
         (0.5, 0.5),
     )
@@ -305,6 +311,8 @@ def case(**changes: object) -> Case:
         timeline=timeline,
         shipped=ship(timeline),
         wells=wells(),
+        rules=Rulebook(),
+        rulings=Rulings(),
         findings=findings(),
         ran=check_names(),
         sources=sources,

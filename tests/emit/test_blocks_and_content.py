@@ -15,7 +15,7 @@ from hypothesis import strategies as st
 
 from wellseq.emit.blocks import decimal, table_name
 from wellseq.emit.content import content_id
-from wellseq.emit.contents import contents, file_kinds
+from wellseq.emit.contents import also_kinds, contents, file_kinds
 from wellseq.emit.files.claims_json import write as write_claims
 from wellseq.emit.files.drives_csv import write as write_drives
 from wellseq.timeline.shipped import Shipped
@@ -43,9 +43,11 @@ def test_a_block_s_file_is_named_by_number_and_trigger() -> None:
 
 
 def test_every_kind_of_file_is_found_and_no_name_is_given_twice() -> None:
-    assert file_kinds() == ("cautions_md", "claims_json", "copies", "drives_csv", "table_csv")
-    names = [path for path, _ in contents(made_case.cleared())]
-    assert len(set(names)) == len(names) == 7
+    assert {"claims_json", "copies", "csvw_json", "drives_csv", "table_csv"} <= set(file_kinds())
+    assert also_kinds() == ("hdf5", "npz")
+    plain = [path for path, _ in contents(made_case.cleared())]
+    names = [path for path, _ in contents(made_case.cleared(), also_kinds())]
+    assert len(set(names)) == len(names) == len(plain) + 4
 
 
 def test_drives_are_a_table_with_a_column_per_sector() -> None:
@@ -76,7 +78,7 @@ def test_claims_give_regions_bounds_floors_and_losses() -> None:
     assert claim["right"]["certified_V"] == 3.5
     assert claim["right"]["floor_V"] == 0.5
     assert claim["right"]["losses_V"]["calibration"] == 0.3
-    assert (claim["well_m"], claim["left"]["region_m"]) == ([0.012, 0.018], [0.01, 0.03])
+    assert (claim["well_m"], claim["left"]["region_m"]) == ([0.034, 0.042], [0.006, 0.034])
 
 
 def shipped() -> Shipped:

@@ -6,8 +6,6 @@ import os
 import resource
 import shutil
 import signal
-import subprocess
-import sys
 from collections.abc import Callable, Iterator, Sequence
 from pathlib import Path
 
@@ -276,45 +274,3 @@ def test_the_two_ways_of_swapping_do_the_same(
     monkeypatch.setattr(swap, "exchange", lambda one, two: False)
     write_folder(made_case.cleared(), other, verify)
     assert everything(published) == everything(other)
-
-
-KILLER = """
-import os, signal, sys, time
-from pathlib import Path
-sys.path.insert(0, sys.argv[1])
-import made_case
-from wellseq.emit.publish import write_folder
-from wellseq.reread.folder import verify
-target = Path(sys.argv[2])
-keys = [made_case.cleared(), made_case.cleared(findings=made_case.findings()[:2])]
-seen = set()
-for kill in range(60):
-    child = os.fork()
-    if not child:
-        while True:
-            for key in keys:
-                write_folder(key, target, lambda folder: ())
-    time.sleep(0.001 + 0.0017 * kill)
-    os.kill(child, signal.SIGKILL)
-    os.waitpid(child, 0)
-    assert verify(target) == (), (kill, verify(target))
-    seen.add((target / "manifest.json").read_bytes())
-print(len(seen))
-"""
-
-
-def test_a_killed_writer_leaves_the_old_folder_or_the_new(published: Path) -> None:
-    """Sixty kills at instants spread over several builds; the long trial is another matter."""
-    here = str(Path(__file__).parent)
-    run = subprocess.run(
-        [sys.executable, "-W", "ignore", "-c", KILLER, here, str(published)],
-        capture_output=True,
-        text=True,
-        check=False,
-        env={**os.environ, "OPENBLAS_NUM_THREADS": "1", "PYTHONPATH": ROOT},
-    )
-    assert run.stderr == ""
-    # Both folders were met: the kills did not all come before the first rename.
-    assert run.stdout == "2\n"
-    write_folder(made_case.cleared(), published, verify)
-    assert beside(published) == ["out"]

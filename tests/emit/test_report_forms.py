@@ -38,7 +38,7 @@ def thing(*findings: Finding, not_run: tuple[tuple[str, str], ...] = ()) -> Exam
 
 
 def test_forms_are_the_files_of_the_folder() -> None:
-    assert format_names() == ("json", "lines", "text")
+    assert format_names() == ("json", "junit", "lines", "sarif", "text")
     with pytest.raises(KeyError):
         report("xml", [thing()])
 

@@ -15,7 +15,8 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from wellseq.checks.judging import clear
-from wellseq.emit.files.table_csv import electrode_volts, write
+from wellseq.emit.columns import Column, Kind, scale_of
+from wellseq.emit.files.table_csv import write
 from wellseq.model.trap import Converter
 from wellseq.timeline.shipped import Shipped, ShippedBlock
 
@@ -48,6 +49,11 @@ def test_every_cell_is_what_was_shipped() -> None:
         assert [states.index(row["shutter"]) for row in rows] == block.states[:, 0].tolist()
 
 
+def volts_of(converter: Converter, codes: list[int]) -> list[float]:
+    column = Column("a", Kind.CODE, 2**converter.bits - 1, scale_of(converter))
+    return column.volts(codes)
+
+
 @given(
     st.floats(-1e4, 0), st.floats(1, 1e4), st.integers(1, 24), st.floats(0.5, 2), st.floats(-1, 1)
 )
@@ -64,7 +70,7 @@ def test_volts_are_the_floats_nearest_to_the_exact_value(
         offset_with_spread_V=(offset, 0.0),
     )
     codes = sorted({0, 1, 2**bits // 3, 2**bits - 1})
-    for code, volts in zip(codes, electrode_volts(converter, codes), strict=True):
+    for code, volts in zip(codes, volts_of(converter, codes), strict=True):
         nominal = Fraction(low) + code * (Fraction(high) - Fraction(low)) / (2**bits - 1)
         assert volts == float(Fraction(gain) * nominal + Fraction(offset))
 
@@ -75,7 +81,7 @@ def test_naive_floats_would_not_agree() -> None:
     assert isinstance(converter, Converter)
     codes = list(range(0, 65536, 97))
     naive = [converter.electrode_V(converter.low_V + code * converter.code_V) for code in codes]
-    assert sum(a != b for a, b in zip(naive, electrode_volts(converter, codes), strict=True)) > 50
+    assert sum(a != b for a, b in zip(naive, volts_of(converter, codes), strict=True)) > 50
 
 
 @pytest.mark.parametrize("code", [-1, 2**16])

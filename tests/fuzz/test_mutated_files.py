@@ -26,7 +26,7 @@ ROOT = Path(wellseq.__file__).parent.parent
 FRONT = (("sequence", 0, 4500), ("sequence", 4500, 9000))
 TRAPS = (("trap", 0, 11_200),)
 WHOLE = (("check", 0, 400), ("monsters", 0, 1000))
-SECONDS = 70
+SECONDS = 400
 MEMORY_BYTES = 512 * 2**20
 
 

@@ -3,8 +3,9 @@
 A page has sections under `## ` headings; in them stand examples, fenced as ```well.  An example
 that begins with `wellseq 1` is a whole file.  Any other is a piece of a sequence on the page trap;
 it gets the clouds that it names, the first of them standing at R6 where the example does not say
-how it comes.  A ```toml fence before it is added to the trap file, a ```python fence after it
-changes the compiled `case`, for what no sequence can bring about.
+how it comes.  A ```toml fence before it is added to the trap file, a ```rules fence before it is a
+rules file that the trap names, a ```python fence after it changes the compiled `case`, for what no
+sequence can bring about.
 """
 
 from __future__ import annotations
@@ -38,6 +39,7 @@ class Example:
     text: str
     trap_more: str = ""
     changes: list[str] = field(default_factory=list)
+    rules: str = ""
 
     def compile(self, folder: Path) -> Case:
         """The judged case of this example, compiled in an empty folder."""
@@ -45,7 +47,11 @@ class Example:
             trap = (HERE / "page.trap.toml").read_text("utf-8")
             if name.startswith("unpatched"):
                 trap = re.sub(r"^patch = .*\n", "", trap, flags=re.MULTILINE)
+            if self.rules:
+                trap = trap.replace("[site]\n", '[site]\nrules = ["page.rules"]\n')
             (folder / name).write_text(trap + "\n" + self.trap_more, "utf-8")
+        if self.rules:
+            (folder / "page.rules").write_text(self.rules, "utf-8")
         shutil.copytree(HERE / "common", folder / "common")
         path = folder / "page.well"
         path.write_text(whole(self.text), "utf-8")
@@ -66,13 +72,15 @@ def sections(page: str) -> dict[str, str]:
 def examples(text: str) -> list[Example]:
     """The examples of a section, in order."""
     found: list[Example] = []
-    more = ""
+    more = rules = ""
     for kind, body in FENCE.findall(text):
         if kind == "toml":
             more = body
+        elif kind == "rules":
+            rules = body
         elif kind == "well":
-            found.append(Example(body, more, []))
-            more = ""
+            found.append(Example(body, more, [], rules))
+            more = rules = ""
         elif kind == "python":
             found[-1].changes.append(body)
     return found

@@ -20,7 +20,10 @@ def reseal(folder: Path, change: Callable[[Document], None] | None = None) -> No
     """Recompute hashes, content id and digest; `change` may edit the manifest before that."""
     path = folder / "manifest.json"
     manifest = json.loads(path.read_bytes())
-    manifest["content_id"] = content_id(folder, manifest)
+    before, manifest["content_id"] = manifest["content_id"], content_id(folder, manifest)
+    for described in folder.glob("*-metadata.json"):
+        text = described.read_bytes().replace(before.encode(), manifest["content_id"].encode())
+        described.write_bytes(text)
     for name in manifest["files"]:
         content = (folder / name).read_bytes()
         sha256 = hashlib.sha256(content).hexdigest()

@@ -59,7 +59,7 @@ class Limit:
     def margin(self, value: float, uncertainty: float = 0.0) -> float:
         """How far inside the limit the worst of the reading is; negative outside, NaN unknown."""
         sign = 1.0 if self.side == "at most" else -1.0
-        return sign * (self.value - value) - uncertainty
+        return sign * (self.value - value) - uncertainty + 0.0
 
 
 def at_most(value: float, unit: str = "") -> Limit:
@@ -90,7 +90,11 @@ class Origin:
 
 @dataclass(frozen=True, slots=True)
 class Mistake:
-    """Something wrong with a text: the bad thing's name, where, what, and what would be right."""
+    """Something wrong with a text: the bad thing's name, where, what, and what would be right.
+
+    `waivable` is False for what no `allow` may accept though others of its name may be accepted;
+    `strip` are lines of text that show what the signals were around it.
+    """
 
     name: str
     place: Place
@@ -100,6 +104,8 @@ class Mistake:
     subject: str = ""
     block: str = ""
     window_s: tuple[float, float] | None = None
+    waivable: bool = True
+    strip: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -109,7 +115,8 @@ class Reading:
     `value` and `uncertainty` are in the limit's unit; `message` says in words what was measured and
     may hold {value}, {uncertainty}, {limit} (filled in with units); `window_s` is the span of time
     within the block, in seconds.  `between`, where given, is the interval that is judged instead of
-    value ± uncertainty, whose sum and difference would move its ends by rounding.
+    value ± uncertainty, whose sum and difference would move its ends by rounding.  `waivable` and
+    `strip` are those of a `Mistake`.
     """
 
     value: float
@@ -122,6 +129,8 @@ class Reading:
     window_s: tuple[float, float] | None = None
     hint: str = ""
     between: tuple[float, float] | None = None
+    waivable: bool = True
+    strip: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -129,6 +138,7 @@ class Finding:
     """A judged reading or a mistake, with everything a report needs.
 
     `value`, `limit`, `margin`, `uncertainty` share `unit`, or are None when nothing was measured.
+    `known` says why a reviewer need not look again; it opens no table, only `allow` does.
     """
 
     name: str
@@ -149,6 +159,9 @@ class Finding:
     margin: float | None = None
     uncertainty: float | None = None
     reason: str = field(default="", compare=False)
+    known: str = field(default="", compare=False)
+    waivable: bool = field(default=True, compare=False)
+    strip: tuple[str, ...] = field(default=(), compare=False)
 
     @property
     def blocks(self) -> bool:

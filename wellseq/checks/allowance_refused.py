@@ -1,4 +1,7 @@
-"""An allowance names a finding that may never be allowed, or no finding at all."""
+"""An allowance names a finding that may never be allowed, or no finding at all.
+
+A rule marked `never_waivable` may never be broken, though other rules may be by allowance.
+"""
 
 from __future__ import annotations
 
@@ -22,6 +25,13 @@ def read(case: Case) -> Iterator[Mistake]:
     for allowance in dict.fromkeys(reached(case.sequence).allowances):
         if not waivable(allowance.name):
             yield _mistake(allowance)
+        for finding in case.findings:
+            here = (finding.name, finding.place) == (allowance.name, allowance.step_place)
+            if here and finding.blocks and not finding.waivable:
+                message = f"this '{allowance.name}' may never be allowed: {finding.message}"
+                hint = "mend the step"
+                yield Mistake("allowance-refused", allowance.place, message, hint)
+                break
 
 
 def _mistake(allowance: Allowed) -> Mistake:

@@ -26,7 +26,7 @@ def read(case: Case) -> Iterator[Mistake]:
     used = {
         (finding.name, finding.place)
         for finding in case.findings
-        if finding.verdict is Verdict.ALLOWED
+        if finding.verdict is Verdict.ALLOWED or (finding.blocks and not finding.waivable)
     }
     for allowance in dict.fromkeys(reached(case.sequence).allowances):
         needed = (allowance.name, allowance.step_place) in used

@@ -8,8 +8,10 @@ from typing import TypeVar
 
 from wellseq.base.finding import Finding, Mistake, Origin
 from wellseq.base.place import Place
+from wellseq.model.rulebook import Rulebook
 from wellseq.model.sequence import Sequence, SourceFile
 from wellseq.model.trap import Trap
+from wellseq.rules.rulings import Rulings
 from wellseq.timeline.shipped import Shipped
 from wellseq.timeline.timeline import Timeline
 from wellseq.wells.wells import Wells
@@ -32,6 +34,7 @@ class Case:
     included, in order of place.  `ran` and `not_run` name the checks that ran and, with the cause,
     those that had nothing to read.  `sources` are all files that were read, also of a broken text.
     `each` is the one value of an `each` that is played, in base units; empty when all are.
+    `rules` are the interlock rules for this trap, `rulings` what came of each on this sequence.
     """
 
     path: Path
@@ -42,6 +45,8 @@ class Case:
     timeline: Timeline | None = None
     shipped: Shipped | None = None
     wells: Wells | None = None
+    rules: Rulebook | None = None
+    rulings: Rulings | None = None
     findings: tuple[Finding, ...] = ()
     ran: tuple[str, ...] = ()
     not_run: tuple[tuple[str, str], ...] = ()

@@ -24,7 +24,9 @@ from wellseq.base.place import Place
 from wellseq.checks.case import Case
 from wellseq.checks.numbers import amount
 
-_HOUSE = frozenset({"case", "judging", "keeping", "numbers", "pieces", "windows", "written"})
+_HOUSE = frozenset(
+    {"breaches", "case", "judging", "keeping", "numbers", "pieces", "windows", "written"}
+)
 _AFTER_ALLOWANCES = ("allowance-refused", "allowance-unused")
 
 
@@ -117,6 +119,8 @@ def _of_mistake(name: str, mistake: Mistake) -> Finding:
         chain=origin.chain if origin else (),
         block=mistake.block,
         window_s=mistake.window_s,
+        waivable=mistake.waivable,
+        strip=mistake.strip,
     )
 
 
@@ -147,6 +151,8 @@ def _of_reading(name: str, reading: Reading) -> Finding:
         unit=limit.unit,
         margin=margin,
         uncertainty=reading.uncertainty,
+        waivable=reading.waivable,
+        strip=reading.strip,
     )
 
 
@@ -176,7 +182,7 @@ def _allow(case: Case, found: list[Finding]) -> list[Finding]:
 
 def _allowed(finding: Finding, reasons: dict[tuple[str, Place], str]) -> Finding:
     reason = reasons.get((finding.name, finding.place))
-    if reason is None:
+    if reason is None or not finding.waivable:
         return finding
     return replace(finding, verdict=Verdict.ALLOWED, reason=reason)
 
@@ -208,5 +214,5 @@ def clear(case: Case) -> Cleared | None:
 
 
 def _is_clear(case: Case) -> bool:
-    stages = (case.trap, case.sequence, case.timeline, case.shipped, case.wells)
+    stages = (case.trap, case.sequence, case.timeline, case.shipped, case.wells, case.rulings)
     return None not in stages and not case.blocked and case.ran == check_names()

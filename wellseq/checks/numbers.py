@@ -29,3 +29,10 @@ def amount(value: float, unit: str) -> str:
 def _figures(value: float) -> str:
     text = f"{value:.4g}"
     return f"{value:.0f}" if "e" in text and 1 <= abs(value) < 1e9 else text
+
+
+def stretch(start_s: float, end_s: float) -> str:
+    """Write a stretch of time (s): when it begins, to the nanosecond, and how long it lasts."""
+    first, last = sorted((start_s, end_s))
+    begin = f"{first:.9f}".rstrip("0").rstrip(".") if first else "0"
+    return f"{begin} s" if first == last else f"{begin} s, for {amount(last - first, 's')}"

@@ -52,6 +52,36 @@ def _let(text: str) -> tuple[str, str]:
     return name.strip(), value.strip()
 
 
+def standard_input(names: Sequence[str], called: str | None) -> bytes | None:
+    """What stands on standard input, where `-` is among the names; None where it is not.
+
+    Raises UsageError when it has no name, or is asked for twice.
+    """
+    if "-" not in names:
+        return None
+    if not called:
+        raise UsageError(
+            "a text from standard input needs a name, which says where its trap is: --as"
+        )
+    if list(names).count("-") > 1:
+        raise UsageError("standard input can be read once only")
+    return sys.stdin.buffer.read()
+
+
+class UsageError(Exception):
+    """The words of a call do not go together; the sentence says why."""
+
+
+def add_as(parser: argparse.ArgumentParser) -> None:
+    """`--as NAME`, the name of what comes from standard input."""
+    parser.add_argument(
+        "--as",
+        dest="called",
+        metavar="NAME",
+        help="the file that standard input (FILE `-`) stands for, for its trap and in findings",
+    )
+
+
 def print_report(things: Sequence[Examined], arguments: argparse.Namespace) -> None:
     """Write the findings in the form that was asked for to standard output."""
     from wellseq.emit.formats import Options, report
@@ -62,12 +92,15 @@ def print_report(things: Sequence[Examined], arguments: argparse.Namespace) -> N
 
 def status_of(thing: Examined) -> int:
     """The exit status that one examined file comes to."""
-    if thing.clear:
+    if thing.clear or thing.settled:
         return status.CLEAR
-    blocking = [finding for finding in thing.findings if finding.blocks]
+    blocking = [finding for finding in thing.findings if finding.blocks and not finding.known]
     if any(finding.name in ("unreadable-file", "folder-unreadable") for finding in blocking):
         return status.NO_INPUT
-    if any(finding.place.file.endswith(".toml") for finding in blocking):
+    if any(
+        finding.place.file.endswith((".toml", ".rules")) or finding.name == "known-unreadable"
+        for finding in blocking
+    ):
         return status.WRONG_TRAP
     return status.FINDINGS
 

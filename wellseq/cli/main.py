@@ -12,6 +12,7 @@ from collections.abc import Sequence
 from importlib import import_module
 
 from wellseq.cli import status
+from wellseq.cli.common import UsageError
 from wellseq.cli.members import TYPE_CHECKING, names_in
 from wellseq.cli.terminal import prepare
 from wellseq.version import __version__
@@ -23,7 +24,8 @@ if TYPE_CHECKING:
 DESCRIPTION = "Compile a sequence for the electrodes of a Penning-Malmberg trap, or say why not."
 EPILOGUE = """\
 exit status: 0 everything was examined and passes; 1 findings; 64 usage; 66 input missing or
-unreadable; 70 a fault of wellseq; 73 output cannot be written; 78 the trap file is wrong.
+unreadable; 70 a fault of wellseq; 73 output cannot be written; 78 the trap file or a rules file is
+wrong.
 
 example: wellseq check evening.well"""
 
@@ -59,6 +61,9 @@ def main(argv: Sequence[str] | None = None) -> int:
         return leaving.code if isinstance(leaving.code, int) else status.CLEAR
     except KeyboardInterrupt:
         return status.INTERRUPTED
+    except UsageError as why:
+        sys.stderr.write(f"wellseq: {why}\n")
+        return status.USAGE
     except OSError as error:
         if error.filename is not None:
             return _our_fault(error)

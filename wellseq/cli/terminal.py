@@ -15,7 +15,7 @@ from wellseq.cli.members import TYPE_CHECKING
 if TYPE_CHECKING:
     from typing import TextIO
 
-WIDTH_LEAST = 40
+WIDTH_LEAST = 20
 WIDTH_MOST = 120
 WIDTH_ELSEWHERE = 100
 

@@ -72,7 +72,7 @@ class Profile:
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Bounces:
-    """Per energy: J in J s, period in s, turning points in m; NaN where it is not held; (energies,)."""
+    """Per energy: J in J s, period in s, turning points in m; NaN where not held; (energies,)."""
 
     action_Js: Array
     period_s: Array
@@ -124,11 +124,13 @@ def profile(z_m: ArrayLike, energy_eV: ArrayLike, mass_kg: float) -> Profile:
 
 def _inner(heights: Array, lowest: int) -> float:
     """The highest barrier that has a minimum beyond it, on either side of the lowest one."""
-    found = 0.0
+    found, dust = 0.0, 1e-9 * float(heights.max())
     for side in (heights[lowest::-1], heights[lowest:]):
         running = np.maximum.accumulate(side)
-        # A point lower than something nearer the bottom lies in a dip behind that barrier.
-        behind = running[side < running]
+        ahead = np.maximum.accumulate(side[::-1])[::-1]
+        # A point lower than something nearer the bottom, from which U rises again, lies in a dip
+        # behind that barrier; a tail that only falls is none.
+        behind = running[(side < running - dust) & (side < ahead - dust)]
         if len(behind):
             found = max(found, float(behind.max()))
     return found
@@ -157,10 +159,11 @@ def bounces(well: Profile, energies_eV: ArrayLike) -> Bounces:
 
 
 def _turning_points(well: Profile, energies: Array, marks: Array, running: Array) -> Array:
-    """Where the spline first reaches each energy, outward along monotone pieces; Newton, kept in."""
+    """Where the spline first reaches each energy outward; Newton, kept in a monotone piece."""
     outer = np.searchsorted(running, energies, side="left")
     near, far = marks[outer - 1].copy(), marks[outer].copy()
     at = 0.5 * (near + far)
+    closeness = 4e-16 * np.abs(well.spline.x[[0, -1]]).max()
     for _ in range(_ROUNDS_MAX):
         excess = well.above_bottom_eV(at) - energies
         above = excess > 0.0
@@ -169,11 +172,11 @@ def _turning_points(well: Profile, energies: Array, marks: Array, running: Array
         slope = well.spline(at, 1)
         with np.errstate(divide="ignore", invalid="ignore"):
             step = at - excess / slope
+        # A step that no longer moves is at the root, though it may end on the bracket's edge.
+        settled = np.abs(step - at) <= closeness
         within = (step - near) * (step - far) < 0.0
-        following = np.where(within, step, 0.5 * (near + far))
-        done = np.abs(following - at) <= 4e-16 * np.abs(at) + 1e-18
-        at = following
-        if done.all():
+        at = np.where(settled, at, np.where(within, step, 0.5 * (near + far)))
+        if (settled | (np.abs(far - near) <= closeness)).all():
             break
     return at
 
@@ -196,9 +199,9 @@ def energies_at(well: Profile, actions_Js: ArrayLike) -> Array:
         excess = found.action_Js - wanted
         low, high = np.where(excess > 0.0, low, energies), np.where(excess > 0.0, energies, high)
         step = energies - excess * 2.0 * math.pi / (found.period_s * ELEMENTARY_CHARGE_C)
-        following = np.where((step > low) & (step < high), step, 0.5 * (low + high))
-        done = np.abs(following - energies) <= 1e-13 * energies
-        energies = following
-        if done.all():
+        settled = np.abs(step - energies) <= 1e-13 * energies
+        within = (step > low) & (step < high)
+        energies = np.where(settled, energies, np.where(within, step, 0.5 * (low + high)))
+        if settled.all():
             break
     return np.where(held, energies, math.nan)

@@ -33,6 +33,7 @@ from wellseq.clouds.waveforms import Waveforms
 from wellseq.fields.hermite import FloatArray
 
 MODEL = "flight"
+Indices = NDArray[np.intp]
 STEPS_MAX = 2_000_000
 PARTICLE_STEPS_MAX = 2_000_000_000
 REST_SHARE_MAX = 0.005
@@ -44,8 +45,9 @@ LOOK_STEPS = 8
 class Flown:
     """Particles (n,) at the end of a flight, or where and when they left.
 
-    `z_m`, `speed_m_per_s` (with its sign), `energy_eV` total; `left_s` NaN for who stayed; `side`
-    -1 left, 0 stayed, +1 right.  All NaN when `outside` says why there is no figure.
+    `z_m`, `speed_m_per_s` (with its sign), `energy_eV` total, at the volts after a jump at the end;
+    `left_s` NaN for who stayed; `side` -1 left, 0 stayed, +1 right.  All NaN when `outside` says
+    why there is no figure.
     """
 
     z_m: FloatArray
@@ -99,29 +101,39 @@ def fly(
         raise ValueError("places and speeds must be two lists of one length")
     parts = list(segments(waves, start_s, end_s, step_s))
     steps = sum(part.steps for part in parts)
-    outside = _limits(z_m.size, steps, mass_kg, speed_m_per_s)
+    outside = (*_too_much(z_m.size, steps), *_too_fast(mass_kg, speed_m_per_s))
     if outside:
-        missing = np.full(z_m.size, np.nan)
-        side = np.zeros(z_m.size, np.int8)
-        return Flown(missing, missing, missing, missing, side, 0, outside)
+        return _nothing(z_m.size, 0, outside)
     pilot = _Pilot(table, mass_kg, charge_e, z_m, speed_m_per_s, leave_m)
     for part in parts:
         pilot.through(part)
         if stop_when_empty and not pilot.swarm.who.size:
             break
-    return pilot.landed(waves.at(end_s))
+    flown = pilot.landed(waves.at(end_s))
+    outside = _too_fast(mass_kg, flown.speed_m_per_s)
+    return _nothing(z_m.size, flown.particle_steps, outside) if outside else flown
 
 
-def _limits(count: int, steps: int, mass_kg: float, speed: FloatArray) -> tuple[Outside, ...]:
+def _nothing(count: int, particle_steps: int, outside: tuple[Outside, ...]) -> Flown:
+    missing = np.full(count, np.nan)
+    side = np.zeros(count, np.int8)
+    return Flown(missing, missing, missing, missing, side, particle_steps, outside)
+
+
+def _too_fast(mass_kg: float, speed: FloatArray) -> tuple[Outside, ...]:
     fastest = float(np.abs(speed).max(initial=0.0))
     share = 0.5 * (fastest / LIGHT_SPEED_M_PER_S) ** 2
+    if share <= REST_SHARE_MAX:
+        return ()
+    return (Outside(MODEL, "kinetic over rest energy", share, REST_SHARE_MAX),)
+
+
+def _too_much(count: int, steps: int) -> tuple[Outside, ...]:
     found = []
     if steps > STEPS_MAX:
         found.append(Outside(MODEL, "steps", float(steps), STEPS_MAX))
     if steps * count > PARTICLE_STEPS_MAX:
         found.append(Outside(MODEL, "particle-steps", float(steps * count), PARTICLE_STEPS_MAX))
-    if share > REST_SHARE_MAX:
-        found.append(Outside(MODEL, "kinetic over rest energy", share, REST_SHARE_MAX))
     return tuple(found)
 
 
@@ -141,9 +153,7 @@ class Segment:
         return (self.end_s - self.start_s) / self.steps
 
 
-def segments(
-    waves: Waveforms, start_s: float, end_s: float, step_s: float
-) -> Iterator[Segment]:
+def segments(waves: Waveforms, start_s: float, end_s: float, step_s: float) -> Iterator[Segment]:
     """The stretches between the waveforms' breakpoints from `start_s` to `end_s`, in s."""
     times, volts = waves.times_s, waves.volts
     now, at = start_s, waves.at(start_s)
@@ -261,6 +271,7 @@ class _Pilot:
         swarm.kick(force, 0.5)
         for k in range(1, part.steps + 1):
             swarm.drift()
+            self.done += swarm.who.size
             if moving:
                 np.multiply(change, k / part.steps, out=force)
                 force += first
@@ -270,7 +281,6 @@ class _Pilot:
                 self._let_go(part, k, force, 0.0 if last else 0.5)
                 if not swarm.who.size:
                     break
-        self.done += swarm.who.size * part.steps
 
     def _let_go(self, part: Segment, k: int, force: FloatArray, ahead: float) -> None:
         """Record who is beyond the planes; speeds are `ahead` kicks ahead of the places."""
@@ -291,7 +301,7 @@ class _Pilot:
         self._store(who, place, speed, volts)
         swarm.keep(~gone)
 
-    def _store(self, who: FloatArray, place: FloatArray, speed: FloatArray, volts: FloatArray) -> None:
+    def _store(self, who: Indices, place: FloatArray, speed: FloatArray, volts: FloatArray) -> None:
         table = self.table
         self.z_m[who] = table.start_m + table.step_m * place
         self.speed_m_per_s[who] = v = speed * (table.step_m / self.step_s)
@@ -308,6 +318,4 @@ class _Pilot:
         gone = np.isfinite(self.left_s)
         if self.leave_m is not None:
             side[gone] = np.where(self.z_m[gone] < sum(self.leave_m) / 2, -1, 1)
-        return Flown(
-            self.z_m, self.speed_m_per_s, self.energy_eV, self.left_s, side, self.done
-        )
+        return Flown(self.z_m, self.speed_m_per_s, self.energy_eV, self.left_s, side, self.done)

@@ -1,9 +1,9 @@
 """Orbits in a potential that stands still: turning points, times of travel, actions.
 
 In U(z) of forces.AxisPotential; energies in eV *per elementary charge*, so that they compare with U
-in V, and `mass_kg` is the mass per elementary charge likewise.  Turning points are roots of the table's
-own parabolas, never nodes.  Where a particle turns or starts from rest its speed goes with the root
-of the distance, so times are summed in a variable in which the integrand is smooth.
+in V, and `mass_kg` is the mass per elementary charge likewise.  Turning points are roots of the
+table's own parabolas, never nodes.  Where a particle turns or starts from rest its speed goes with
+the root of the distance, so times are summed in a variable in which the integrand is smooth.
 
     time of travel = Int dz sqrt(m/2)/sqrt(E - U);   J = (1/pi) Int sqrt(2 m (E - U)) dz
 
@@ -37,7 +37,9 @@ def turning_m(
     first = round((from_m - potential.start_m) / potential.step_m)
     last = round((to_m - potential.start_m) / potential.step_m)
     first, last = np.clip([first, last], 0, potential.node_V.size - 1)
-    line = potential.node_V[first : last + 1] if way > 0 else potential.node_V[last : first + 1][::-1]
+    line = (
+        potential.node_V[first : last + 1] if way > 0 else potential.node_V[last : first + 1][::-1]
+    )
     highest = np.maximum.accumulate(line)
     after = np.searchsorted(highest, energy_eV, side="left")
     turns = (after > 0) & (after < line.size)
@@ -47,7 +49,9 @@ def turning_m(
     return np.asarray(np.where(turns, place, np.nan))
 
 
-def _root(potential: AxisPotential, node: FloatArray, way: int, energy_eV: FloatArray) -> FloatArray:
+def _root(
+    potential: AxisPotential, node: FloatArray, way: int, energy_eV: FloatArray
+) -> FloatArray:
     """Share of the interval beyond `node` at which U = E, rising from below."""
     other = np.clip(node + way, 0, potential.node_V.size - 1)
     rise = way * potential.slope_V_per_m[node] * potential.step_m
@@ -61,7 +65,11 @@ def _root(potential: AxisPotential, node: FloatArray, way: int, energy_eV: Float
 
 
 def travel_s(
-    potential: AxisPotential, energy_eV: FloatArray, from_m: FloatArray, to_m: FloatArray, mass_kg: float
+    potential: AxisPotential,
+    energy_eV: FloatArray,
+    from_m: FloatArray,
+    to_m: FloatArray,
+    mass_kg: float,
 ) -> FloatArray:
     """Time in s that particles (n,) of total energy (eV) and mass (kg) take between two places, m.
 

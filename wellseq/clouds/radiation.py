@@ -65,6 +65,11 @@ def isotropic_time_s(
     return time_constant_s * math.log((start_K - floor_K) / (goal_K - floor_K))
 
 
+def noise_heating_K_per_s(*, base_K: float, bore_K: float, time_constant_s: float) -> float:
+    """H in K/s of a machine whose clouds are measured to stop at `base_K` (K), with tau_T in s."""
+    return max(base_K - bore_K, 0.0) / time_constant_s
+
+
 def expansion_heating_K_per_s(
     *, number: float, length_m: float, expansion_time_s: float, charge_e: float = 1.0
 ) -> float:

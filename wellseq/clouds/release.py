@@ -39,6 +39,13 @@ from wellseq.fields.hermite import FloatArray
 MODEL = "release"
 SLOPE = "slope of the release"
 SNAPSHOTS = 30
+CLOSER_MAX = 4
+SLOPE_MARGIN = 0.01
+"""Half-width, as a share, for the instants looked at and the fit."""
+DELAY_BOUNCES = 2.5
+"""A particle needs about so many bounces to get out once it may: it lingers at the top."""
+RIPPLE_V = 1e-5
+"""A well shallower than this has opened."""
 ENERGIES = 500
 HOTTEST_THETA = 40.0
 ADIABATIC_MAX = 0.3
@@ -103,14 +110,15 @@ def release(
     """Open the well at `at_m` (m) by `waves` from `start_s` to `end_s` (s), towards +1 or -1.
 
     `temperature_K` in K along the axis; mass in kg, charge in e with its sign.  Beyond `exit_m` (m)
-    a particle is at the detector.  Intervals reach from the lowest to the highest temperature.
+    a particle is at the detector.  Intervals reach from the lowest to the highest temperature;
+    times have two and a half bounces more above, which particles need to get out.
     Above 0.15 of the depth the apparent temperature alone has no figure.
     """
     reasons = unusable(
         MODEL, mass_kg=mass_kg, temperature_K=temperature_K.low, duration_s=end_s - start_s
     )
     charges, sign = abs(charge_e), 1 if charge_e > 0 else -1
-    basin = table.potential(waves.at(start_s), sign).basin(at_m)
+    basin = table.potential(waves.at(start_s), sign).basin(at_m, RIPPLE_V)
     if basin is None:
         reasons += (Outside(MODEL, "depth of the well", 0.0, 0.0, "V", "above"),)
     if reasons or basin is None:
@@ -119,24 +127,70 @@ def release(
     thetas = [THERMAL_EV_PER_K * one / charges for one in temperatures]
     well = _Emptying(table, waves, sign, mass_kg / charges, basin, thetas[0])
     actions = well.actions(start_s, max(thetas))
-    opening = well.watch(start_s, end_s, actions, thetas)
-    outflows = [_Outflow(opening, actions.left(opening, theta), theta) for theta in thetas]
-    eps = max(one.adiabaticity() for one in outflows)
+    seen = well.watch(start_s, end_s, actions, thetas)
+    outflows = [_Outflow(seen, actions.left(seen, theta), theta) for theta in thetas]
+    eps = float(np.max([one.adiabaticity() for one in outflows]))
     if not eps <= ADIABATIC_MAX:
         return _nothing(eps, (Outside(MODEL, "adiabaticity of the ramp", eps, ADIABATIC_MAX),))
     climb = _climb_V(table.potential(waves.at(end_s), sign), basin, towards, exit_m)
     told = [one.told(start_s, towards, climb, charges) for one in outflows]
+    delay_s = DELAY_BOUNCES / float(seen.bounce_per_s[0])
     spans = [spanned(best, others) for best, *others in zip(*told, strict=True)]
     hot = max(thetas) / basin.depth_V
-    if hot <= HOT_SHARE_MAX:
-        return Release(*spans, adiabaticity=eps)
-    reasons = (Outside(SLOPE, "kT over the depth", hot, HOT_SHARE_MAX),)
-    return Release(*spans[:7], NOT_KNOWN, NOT_KNOWN, eps, reasons)
+    if hot > HOT_SHARE_MAX:
+        reasons = (Outside(SLOPE, "kT over the depth", hot, HOT_SHARE_MAX),)
+        spans[7:] = [NOT_KNOWN, NOT_KNOWN]
+    return Release(
+        share_out=spans[0],
+        share_through=spans[1],
+        share_reaching=spans[2],
+        early_s=_delayed(spans[3], delay_s),
+        middle_s=_delayed(spans[4], delay_s),
+        late_s=_delayed(spans[5], delay_s),
+        energy_eV=spans[6],
+        apparent_K=_widened(spans[7]),
+        correction=_widened(spans[8]),
+        adiabaticity=eps,
+        outside=reasons,
+    )
+
+
+def _widened(slope: Figure) -> Figure:
+    low, high = slope.low * (1.0 - SLOPE_MARGIN), slope.high * (1.0 + SLOPE_MARGIN)
+    return Figure(slope.value, low, high)
+
+
+def _delayed(time_s: Figure, delay_s: float) -> Figure:
+    return Figure(time_s.value, time_s.low, time_s.high + delay_s)
+
+
+def opening(
+    *,
+    table: ForceTable,
+    waves: Waveforms,
+    mass_kg: float,
+    charge_e: float,
+    temperature_K: float,
+    at_m: float,
+    times_s: FloatArray,
+) -> Opening:
+    """The well at `at_m` (m) at rising times (n,) in s; mass in kg, charge in e with its sign.
+
+    `temperature_K` (K) says whose bounces are meant.  Raises ValueError when there is no well at
+    the first time.
+    """
+    charges, sign = abs(charge_e), 1 if charge_e > 0 else -1
+    basin = table.potential(waves.at(float(times_s[0])), sign).basin(at_m, RIPPLE_V)
+    if basin is None:
+        raise ValueError("there is no well to open")
+    theta_V = THERMAL_EV_PER_K * temperature_K / charges
+    return _Emptying(table, waves, sign, mass_kg / charges, basin, theta_V).at(times_s)
 
 
 def _nothing(adiabaticity: float, outside: tuple[Outside, ...]) -> Release:
     """No figure, and why."""
-    return Release(*(NOT_KNOWN,) * 9, adiabaticity, outside)
+    no = NOT_KNOWN
+    return Release(no, no, no, no, no, no, no, no, no, adiabaticity, outside)
 
 
 def _climb_V(potential: AxisPotential, basin: Basin, towards: int, exit_m: float) -> float:
@@ -187,29 +241,34 @@ class _Emptying:
     def watch(
         self, start_s: float, end_s: float, actions: _Actions, thetas_V: list[float]
     ) -> Opening:
-        """Look at equal steps, then more closely (30 each) while anybody is leaving."""
-        coarse = np.linspace(start_s, end_s, SNAPSHOTS)
-        opening = self.at(coarse)
-        left = [actions.left(opening, theta) for theta in thetas_V]
-        first = max(int(np.argmax(np.max(left, axis=0) > 1e-3)) - 1, 0)
-        last = int(np.argmax(np.min(left, axis=0) > 1.0 - 1e-3)) or SNAPSHOTS - 1
-        inner = np.linspace(coarse[first], coarse[last], SNAPSHOTS + 2)
-        return self.at(np.union1d(coarse, inner))
+        """Look at thirty instants, then more closely until thirty fall on those who leave."""
+        seen = self.at(np.linspace(start_s, end_s, SNAPSHOTS))
+        for _ in range(CLOSER_MAX):
+            left = [actions.left(seen, theta) for theta in thetas_V]
+            first = max(int(np.argmax(np.max(left, axis=0) > 1e-3)) - 1, 0)
+            last = int(np.argmax(np.min(left, axis=0) > 1.0 - 1e-3)) or seen.time_s.size - 1
+            if last - first >= SNAPSHOTS - 2:
+                break
+            inner = np.linspace(seen.time_s[first], seen.time_s[last], SNAPSHOTS + 2)
+            seen = self.at(np.union1d(seen.time_s, inner))
+        return seen
 
     def at(self, times_s: FloatArray) -> Opening:
         """The well at times (n,) in s."""
-        rows, gone = [], False
+        rows: list[tuple[float, ...]] = []
+        gone = False
         bottom_m, barrier_V = self.basin.bottom_m, self.basin.barrier_V
         for time_s in times_s.tolist():
             potential = self.table.potential(self.waves.at(time_s), self.sign)
-            found = None if gone else potential.basin(bottom_m)
+            found = None if gone else potential.basin(bottom_m, RIPPLE_V)
             # A bottom beyond the old barriers is another well: this one has opened.
             gone = found is None or not self.basin.left_m < found.bottom_m < self.basin.right_m
             if found is None or gone:
                 rows.append((0.0, 0.0, barrier_V, rows[-1][3] if rows else 1.0, 0.0))
                 continue
             bottom_m, barrier_V = found.bottom_m, found.barrier_V
-            action = action_Js(potential, found, np.array([barrier_V]), self.per_charge_kg)[0]
+            top = np.array([barrier_V])
+            action = float(action_Js(potential, found, top, self.per_charge_kg)[0])
             right = float(found.right_V < found.left_V)
             rows.append((action, found.depth_V, barrier_V, right, self._bounce(potential, found)))
         return Opening(times_s, *np.array(rows).T)

@@ -16,7 +16,7 @@ Nonneutral Plasmas (Addison-Wesley 1990) (both from memory).
 
 from __future__ import annotations
 
-from math import nan, pi, sqrt
+from math import log, nan, pi, sqrt
 
 from wellseq.clouds.constants import (
     BOLTZMANN_J_PER_K,
@@ -60,9 +60,8 @@ def rotation_of_density_rad_per_s(
     *, density_per_m3: float, magnetic_field_T: float, mass_kg: float, charge_e: float = 1
 ) -> float:
     """Slow rotation in rad/s of a cold uniform plasma (1/m³, T, kg, e); NaN above the limit."""
-    pressure = density_per_m3 * abs(charge_e) * pi * COULOMB_VM
     return rotation_of_pressure_rad_per_s(
-        pressure_V_per_m2=abs(charge_e) * pressure,
+        pressure_V_per_m2=density_per_m3 * charge_e**2 * pi * COULOMB_VM,
         magnetic_field_T=magnetic_field_T,
         mass_kg=mass_kg,
         charge_e=charge_e,
@@ -101,7 +100,7 @@ def pressure_V_per_m2(
 def density_of_rotation_per_m3(
     *, rotation_rad_per_s: float, magnetic_field_T: float, mass_kg: float, charge_e: float = 1
 ) -> float:
-    """Density in 1/m³ of a cold plasma that rotates at w in rad/s: 2 ε0 m w (Ω_c − w)/q²."""
+    """Density, 1/m³, of a cold plasma, mass m (kg), turning at w (rad/s): 2 ε0 m w (Ω_c − w)/q²."""
     pressure = pressure_V_per_m2(
         rotation_rad_per_s=rotation_rad_per_s,
         magnetic_field_T=magnetic_field_T,
@@ -116,12 +115,20 @@ def space_charge_scale_V(*, number: float, length_m: float) -> float:
     return COULOMB_VM * number / length_m
 
 
+def column_potential_V(
+    *, number: float, length_m: float, radius_m: float, wall_radius_m: float
+) -> float:
+    """Own potential in V on the axis of a long uniform column: W (1 + 2 ln(Rw/rp)); sizes in m."""
+    scale = space_charge_scale_V(number=number, length_m=length_m)
+    return scale * (1 + 2 * log(wall_radius_m / radius_m))
+
+
 def coupling(*, density_per_m3: float, temperature_K: float, charge_e: float = 1) -> float:
     """Γ, dimensionless, at a density in 1/m³ and a temperature in K; a fluid of lone flights < 1.
 
     Source: S. Ichimaru, Rev. Mod. Phys. 54, 1017 (1982) (from memory).
     """
-    spacing_m = (3 / (4 * pi * density_per_m3)) ** (1 / 3)
+    spacing_m = float((3 / (4 * pi * density_per_m3)) ** (1 / 3))
     return charge_e**2 * COULOMB_VM / (spacing_m * THERMAL_EV_PER_K * temperature_K)
 
 

@@ -19,7 +19,7 @@ from numpy.typing import NDArray
 
 State = NDArray[np.float64]
 Slopes = Callable[[float, State], Sequence[float]]
-WORK_MAX = 100_000
+WORK_MAX = 30_000
 """So many evaluations of the slopes, then the solver gives up and says so."""
 
 
@@ -91,6 +91,8 @@ def solve(
         )
     except _TooMuchWork:
         return _unfinished(first, len(met), counted, f"more than {work_max} evaluations")
+    except (ArithmeticError, ValueError):
+        return _unfinished(first, len(met), counted, "the numbers left the range of the machine")
     if found.status < 0 or not np.isfinite(found.y).all():
         return _unfinished(first, len(met), counted, "the step became too small")
     crossings = tuple(

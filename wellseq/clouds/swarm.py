@@ -94,7 +94,8 @@ def thermal(
     """Places (m) and speeds (m/s) of a cloud in thermal equilibrium along a well, (count,) each.
 
     The density goes with e^{-U/kT} between the barriers; particles whose speed would take them
-    over the lower barrier are given the greatest that does not.  Mass in kg, temperature in K, charge in e.
+    over the lower barrier are given the greatest that does not.  Mass in kg, temperature in K,
+    charge in e.
     """
     theta = THERMAL_EV_PER_K * temperature_K / abs(charge_e)
     z_m = np.linspace(basin.left_m, basin.right_m, _PLACES)

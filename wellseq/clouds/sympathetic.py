@@ -25,10 +25,11 @@ from dataclasses import dataclass, replace
 from typing import Any
 
 from wellseq.clouds import collisions, radiation
-from wellseq.clouds.constants import BOLTZMANN_J_PER_K, THERMAL_EV_PER_K
+from wellseq.clouds.constants import THERMAL_EV_PER_K
 from wellseq.clouds.corners import all_reasons, spanned
 from wellseq.clouds.figures import NOT_KNOWN, Figure, Outside
 from wellseq.clouds.inputs import negative, unusable
+from wellseq.clouds.scales import separation_exponent
 from wellseq.clouds.stiff import WORK_MAX, Condition, Path, State, solve
 
 MODEL = "sympathetic cooling"
@@ -42,20 +43,6 @@ RATE_FACTOR = 3.0
 """nu is uncertain by this where the coolant is magnetised or the clouds separate."""
 SEARCH_TIME_CONSTANTS = 100.0
 """So many tau_T after the end of a step the goals are still looked for."""
-
-
-def separation_exponent(
-    *,
-    temperature_K: float,
-    rotation_rad_per_s: float,
-    radius_m: float,
-    light_mass_kg: float,
-    heavy_mass_kg: float,
-) -> float:
-    """(m_h - m_l) w^2 r^2/(2kT): K, rad/s, m, kg in; dimensionless; well above 1: separated."""
-    edge_m_per_s = rotation_rad_per_s * radius_m
-    energy_J = 0.5 * (heavy_mass_kg - light_mass_kg) * edge_m_per_s * edge_m_per_s
-    return energy_J / (BOLTZMANN_J_PER_K * temperature_K)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -179,8 +166,8 @@ class _Equations:
             temperature_K=heavy_K,
             rotation_rad_per_s=mixture.rotation_rad_per_s,
             radius_m=mixture.radius_m,
-            light_mass_kg=mixture.coolant_mass_kg,
-            heavy_mass_kg=mixture.heavy_mass_kg,
+            light_kg=mixture.coolant_mass_kg,
+            heavy_kg=mixture.heavy_mass_kg,
         )
 
     def widened(self, heavy_K: float, coolant_K: float) -> float:

@@ -2,7 +2,7 @@
 
 An edge may be straight, or that of a single pole; a pole's exponential is cut into chords that stay
 within a stated number of volts of it: a chord over a time h is off by at most h^2/8 max|V''|, so
-the chords of an exponential of swing A and time constant tau are evenly spaced in e^{-t/(2 tau)}.
+those of an exponential with time constant tau are evenly spaced in e^{-t/(2 tau)}.
 A real edge is declared from 10 % to 90 %: 0.8 of a straight edge, tau ln 9 of a single pole's.
 
 Shapes: times (breakpoints,), volts (breakpoints, electrodes); a jump is two breakpoints at one
@@ -13,10 +13,11 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
-from math import ceil, exp, log, sqrt
+from math import ceil, expm1, log, sqrt
 from typing import Literal
 
 import numpy as np
+from numpy.typing import NDArray
 
 from wellseq.fields.hermite import FloatArray
 
@@ -76,8 +77,10 @@ def together(tracks: Sequence[Track]) -> Waveforms:
     jumps = [times[1:][np.diff(times) == 0.0] for times, _ in tracks]
     times_s = np.sort(np.concatenate((shared, np.unique(np.concatenate(jumps)))))
     after = np.concatenate(([False], np.diff(times_s) == 0.0))
-    columns = [np.where(after, value_after(t, v, times_s), _before(t, v, times_s, after))
-               for t, v in tracks]
+    columns = [
+        np.where(after, value_after(t, v, times_s), _before(t, v, times_s, after))
+        for t, v in tracks
+    ]
     return Waveforms(times_s, np.stack(columns, axis=1))
 
 
@@ -88,7 +91,7 @@ def value_after(times_s: FloatArray, volts: FloatArray, at_s: FloatArray) -> Flo
 
 
 def _before(
-    times_s: FloatArray, volts: FloatArray, at_s: FloatArray, after: FloatArray
+    times_s: FloatArray, volts: FloatArray, at_s: FloatArray, after: NDArray[np.bool_]
 ) -> FloatArray:
     """Volts at times; where two breakpoints share a time, those before the jump."""
     first = np.concatenate((after[1:], [False]))
@@ -98,7 +101,7 @@ def _before(
 
 
 def _between(
-    times_s: FloatArray, volts: FloatArray, at_s: FloatArray, index: FloatArray
+    times_s: FloatArray, volts: FloatArray, at_s: FloatArray, index: NDArray[np.intp]
 ) -> FloatArray:
     low = np.clip(index - 1, 0, times_s.size - 1)
     high = np.clip(index, 0, times_s.size - 1)
@@ -143,22 +146,21 @@ def chord_times(
 ) -> FloatArray:
     """Times (n,) from 0 to `over_s` at which chords of an exponential of `swing_V` meet it, s, V.
 
-    Each chord is within about `chord_V` V of swing * e^{-t/tau}.
+    Each chord is within `chord_V` V of swing * e^{-t/tau}.
     """
-    gone = 1.0 - exp(-over_s / (2 * tau_s))
-    count = max(1, ceil(2.0 * gone * sqrt(abs(swing_V) / (8.0 * chord_V))))
     if over_s <= 0.0:
         return np.zeros(1)
-    times = -2.0 * tau_s * np.log1p(-gone * np.arange(count + 1) / count)
-    times[-1] = over_s
-    return np.asarray(times)
+    gone = -expm1(-over_s / (2.0 * tau_s))
+    count = max(1, ceil(2.0 * gone * sqrt(abs(swing_V) / (4.0 * chord_V))))
+    times = -2.0 * tau_s * np.log1p(-gone * np.arange(count) / count)
+    return np.append(times, over_s)
 
 
 def through_pole(track: Track, tau_s: float, chord_V: float = CHORD_V) -> Track:
     """What a single pole of time constant tau (s) makes of a track (s, V) it has settled before.
 
-    Exact at the breakpoints: behind a straight piece of slope c the output is V - c tau plus what is
-    left of the distance before, times e^{-t/tau}.  What is left fades at the end.
+    Exact at the breakpoints: behind a straight piece of slope c the output is V - c tau plus the
+    distance before, times e^{-t/tau}.  What is left fades after the end.
     """
     if tau_s <= 0.0:
         return track

@@ -11,16 +11,28 @@ from wellseq.emit.escape import file_name
 from wellseq.timeline.timeline import Block
 
 ATTO = 10**18
+ENDINGS = {"npz": "npz", "hdf5": "h5"}
+"""Further forms of a table → how their files' names end."""
 
 
 def table_name(block: Block) -> str:
     """The file of a block's table, `block-2-bunch_arrival.csv`; the number makes it unique."""
-    return f"block-{block.index + 1}-{file_name(block.trigger or 'run')}.csv"
+    return f"{_stem(block)}.csv"
+
+
+def also_name(block: Block, form: str) -> str:
+    """The file of a further form of a block's table, `block-2-bunch_arrival.npz`."""
+    return f"{_stem(block)}.{ENDINGS[form]}"
 
 
 def drives_name(block: Block) -> str:
     """The file of a block's drive table, `drives-2-bunch_arrival.csv`."""
     return f"drives-{block.index + 1}-{file_name(block.trigger or 'run')}.csv"
+
+
+def metadata_name(table: str) -> str:
+    """Where CSV on the Web looks for what describes a table (W3C, 2015, sec. 5.3)."""
+    return f"{table}-metadata.json"
 
 
 def exact(value: Fraction) -> str:
@@ -34,3 +46,7 @@ def decimal(seconds: Fraction) -> str:
     sign = "-" if whole < 0 else ""
     units, places = divmod(abs(whole), ATTO)
     return f"{sign}{units}.{places:018d}".rstrip("0").rstrip(".")
+
+
+def _stem(block: Block) -> str:
+    return f"block-{block.index + 1}-{file_name(block.trigger or 'run')}"

@@ -8,34 +8,44 @@ from __future__ import annotations
 
 import hashlib
 import json
+from collections.abc import Iterator
+from weakref import ref
 
 import numpy as np
 
 from wellseq.emit.blocks import decimal, exact
 from wellseq.timeline.shipped import Shipped, ShippedBlock
-from wellseq.timeline.timeline import Drive
+from wellseq.timeline.timeline import Block, Drive
 
-CHUNK_ROWS = 65536
+CHUNK_ROWS = 16384
 
 
 def content_id(shipped: Shipped) -> str:
-    """The id as 64 hexadecimal digits."""
+    """The id as 64 hexadecimal digits; every file of a folder asks for it, so the last is kept."""
+    if _last and _last[0][0]() is shipped:
+        return _last[0][1]
     digest = hashlib.sha256()
     for block in shipped.blocks:
         digest.update(_head(shipped, block))
-        for start in range(0, len(block.ticks), CHUNK_ROWS):
-            rows = slice(start, start + CHUNK_ROWS)
-            matrix = np.concatenate(
-                (
-                    block.ticks[rows, np.newaxis],
-                    block.codes[rows],
-                    block.levels[rows],
-                    block.states[rows],
-                ),
-                axis=1,
-            )
-            digest.update(np.ascontiguousarray(matrix, dtype="<i8").tobytes())
-    return digest.hexdigest()
+        for run in _runs(block):
+            digest.update(run)
+    found = digest.hexdigest()
+    _last[:] = [(ref(shipped), found)]
+    return found
+
+
+_last: list[tuple[ref[Shipped], str]] = []
+
+
+def _runs(block: ShippedBlock) -> Iterator[memoryview]:
+    """The rows as 64-bit little endian integers, some of them at a time."""
+    tables = (block.ticks[:, np.newaxis], block.codes, block.levels, block.states)
+    width = sum(table.shape[1] for table in tables)
+    for start in range(0, len(block.ticks), CHUNK_ROWS):
+        parts = [table[start : start + CHUNK_ROWS] for table in tables]
+        run = np.empty((len(parts[0]), width), dtype="<i8")
+        np.concatenate(parts, axis=1, out=run)
+        yield run.data.cast("B")
 
 
 def drive_cells(drive: Drive) -> list[str]:
@@ -52,6 +62,11 @@ def drive_cells(drive: Drive) -> list[str]:
     ]
 
 
+def drive_table(block: Block) -> list[list[str]]:
+    """The drives of a block as lines of cells, each as long as its ring has sectors."""
+    return [drive_cells(drive) for drive in block.drives]
+
+
 def _head(shipped: Shipped, block: ShippedBlock) -> bytes:
     head = {
         "trigger": block.block.trigger,
@@ -60,7 +75,7 @@ def _head(shipped: Shipped, block: ShippedBlock) -> bytes:
         "converters": list(shipped.converters),
         "switches": list(shipped.switches),
         "lines": list(shipped.lines),
-        "drives": [drive_cells(drive) for drive in block.block.drives],
+        "drives": drive_table(block.block),
     }
     text = json.dumps(head, sort_keys=True, ensure_ascii=False, separators=(",", ":"))
     return f"{text}\n".encode()

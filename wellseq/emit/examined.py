@@ -9,6 +9,7 @@ from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
 
 from wellseq.base.finding import Finding, Verdict
+from wellseq.base.names import printable
 from wellseq.checks.case import Case
 
 
@@ -18,6 +19,8 @@ class Examined:
 
     `ran` and `not_run` name the checks; `duration_s` is the time played (s) or None when no
     timeline was reached; `sources` maps file names as shown to their text, for excerpts.
+    `against` names what the findings were compared with (a file of known findings, a revision), if
+    anything; `set_aside` counts findings that block, stood there already and are not listed.
     """
 
     shown: str
@@ -26,6 +29,8 @@ class Examined:
     not_run: tuple[tuple[str, str], ...] = ()
     duration_s: float | None = None
     sources: Mapping[str, str] = field(default_factory=dict)
+    against: str = ""
+    set_aside: int = 0
 
     @property
     def cause(self) -> str:
@@ -45,11 +50,29 @@ class Examined:
     @property
     def clear(self) -> bool:
         """Whether everything was examined and nothing stands in the way."""
-        return not self.cause and not any(finding.blocks for finding in self.findings)
+        blocked = self.set_aside > 0 or any(finding.blocks for finding in self.findings)
+        return not self.cause and not blocked
+
+    @property
+    def settled(self) -> bool:
+        """Whether everything was examined and whatever stands in the way was known before.
+
+        A file that is settled and not clear still gets no table.
+        """
+        return not self.cause and not any(one.blocks and not one.known for one in self.findings)
 
     def having(self, *verdicts: Verdict) -> tuple[Finding, ...]:
         """The findings with one of these verdicts, in order of place."""
         return tuple(finding for finding in self.findings if finding.verdict in verdicts)
+
+
+def standing(thing: Examined) -> str:
+    """How many findings stood there before, in words."""
+    known = sum(bool(finding.known) for finding in thing.findings)
+    parts = [f"{known} known"] if known else []
+    if thing.set_aside:
+        parts.append(f"{thing.set_aside} there already in {printable(thing.against)}")
+    return "nothing new" + (f", {', '.join(parts)}" if parts else "")
 
 
 def nearest_of_each(findings: Iterable[Finding]) -> tuple[Finding, ...]:

@@ -2,6 +2,7 @@
 
 Columns of a `Place` count characters; a terminal counts cells.  Tab stops stand every eight cells
 and wide characters take two, as the GNU Coding Standards ("Formatting Error Messages") ask for.
+Editors and SARIF viewers count UTF-16 code units; `utf16_column` converts at that edge.
 """
 
 from __future__ import annotations
@@ -9,6 +10,7 @@ from __future__ import annotations
 import re
 import unicodedata
 from collections.abc import Mapping
+from functools import lru_cache
 
 from wellseq.base.names import printable
 from wellseq.base.place import Place
@@ -22,8 +24,19 @@ def source_line(sources: Mapping[str, str], place: Place) -> str | None:
     text = sources.get(place.file)
     if text is None:
         return None
-    lines = _LINE_END.split(text)
-    return lines[place.line - 1] if 0 < place.line <= len(lines) else None
+    return line_of(text, place.line)
+
+
+def line_of(text: str, number: int) -> str | None:
+    """The line of that number (from 1) without its end (LF, CRLF, CR), None when there is none."""
+    lines = lines_of(text)
+    return lines[number - 1] if 0 < number <= len(lines) else None
+
+
+@lru_cache(maxsize=16)
+def lines_of(text: str) -> tuple[str, ...]:
+    """All lines of a text without their ends."""
+    return tuple(_LINE_END.split(text))
 
 
 def cells(character: str, at: int) -> int:
@@ -43,6 +56,28 @@ def display_column(line: str, column: int) -> int:
     for character in line[: column - 1]:
         at += cells(character, at)
     return at + 1 + max(0, column - 1 - len(line))
+
+
+def utf16_column(line: str, column: int) -> int:
+    """The UTF-16 column (from 1) of the character at `column` (from 1); it counts on beyond."""
+    before = line[: column - 1]
+    astral = sum(character > "\uffff" for character in before)
+    return column + astral
+
+
+def character_column(line: str, utf16: int) -> int:
+    """The column in characters (from 1) of a UTF-16 column; inside a pair, that of its character.
+
+    The inverse of `utf16_column`.
+    """
+    at = 1
+    for number, character in enumerate(line, start=1):
+        if at >= utf16:
+            return number
+        at += 2 if character > "\uffff" else 1
+        if at > utf16:
+            return number
+    return len(line) + 1 + utf16 - at
 
 
 def shown_line(line: str) -> str:

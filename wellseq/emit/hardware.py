@@ -18,6 +18,8 @@ def trap_summary(trap: Trap) -> dict[str, object]:
     electrodes = trap.electrodes
     return {
         "name": trap.name,
+        "ends": trap.bore.ends,
+        "patch_V": trap.bore.patch_V or 0.0,
         "converters": [_converter(one) for one in trap.outputs if isinstance(one, Converter)],
         "switches": [_switch(one) for one in trap.outputs if isinstance(one, Switch)],
         "lines": [

@@ -8,17 +8,18 @@ from __future__ import annotations
 
 import hashlib
 import json
-from collections.abc import Mapping
-from dataclasses import dataclass
+from collections.abc import Iterable, Mapping
 from fractions import Fraction
 
 from wellseq.base.finding import Verdict
 from wellseq.checks.case import Case
-from wellseq.checks.judging import Cleared
-from wellseq.emit.blocks import decimal, drives_name, exact, table_name
+from wellseq.emit.blocks import also_name, decimal, drives_name, exact, table_name
 from wellseq.emit.content import content_id
 from wellseq.emit.hardware import trap_summary
-from wellseq.emit.sources import copies
+from wellseq.emit.interlocks import house_files, ruled
+from wellseq.emit.keys import Draft, Key
+from wellseq.emit.single import Written
+from wellseq.emit.sources import copies, written_names
 from wellseq.emit.story import allowances, assumed, roundings
 from wellseq.model.trap import Trap
 from wellseq.timeline.shipped import Shipped, ShippedBlock
@@ -26,29 +27,26 @@ from wellseq.version import __version__
 
 MANIFEST = "manifest.json"
 SCHEMA = "wellseq/folder"
-SCHEMA_VERSION = 1
+DRAFT_SCHEMA = "wellseq/draft"
+"""The schema of a folder that is only for looking at; nothing that plays tables knows it."""
+SCHEMA_VERSION = 2
 ROUNDINGS_KEPT = 32
 NOT_EXAMINED = (
-    "No interlock rule was examined: this version reads no rules.",
     "No forecast of any cloud was made: depths are vacuum depths, space charge is not taken off.",
 )
 
 
-@dataclass(frozen=True, slots=True)
-class Written:
-    """A file of the folder as written: its SHA-256 in hexadecimal digits, its length in bytes."""
+def manifest(key: Key, written: Mapping[str, Written], also: Iterable[str] = ()) -> bytes:
+    """The manifest of a folder whose other files are `written`, as canonical JSON.
 
-    sha256: str
-    size: int
-
-
-def manifest(cleared: Cleared, written: Mapping[str, Written]) -> bytes:
-    """The manifest of a folder whose other files are `written`, as canonical JSON."""
-    case = cleared.case
+    `also` are the further forms that every table has.
+    """
+    case = key.case
     if case.trap is None or case.shipped is None or case.sequence is None:
-        raise TypeError("a cleared case has all its stages")
+        raise TypeError("a case that is published has all its stages")
+    forms = sorted(set(also))
     document: dict[str, object] = {
-        "schema": SCHEMA,
+        "schema": DRAFT_SCHEMA if isinstance(key, Draft) else SCHEMA,
         "schema_version": SCHEMA_VERSION,
         "wellseq": __version__,
         "sequence": case.sequence.name,
@@ -61,16 +59,25 @@ def manifest(cleared: Cleared, written: Mapping[str, Written]) -> bytes:
         "checks": list(case.ran),
         "verdicts": {
             verdict.value: sum(finding.verdict is verdict for finding in case.findings)
-            for verdict in (Verdict.PASS, Verdict.ALLOWED)
+            for verdict in _counted(key)
         },
         "allowances": allowances(case),
         "assumed": assumed(case),
         "not_examined": list(NOT_EXAMINED),
-        "blocks": [_block(block) for block in case.shipped.blocks],
+        "interlocks": {
+            "house_files": [
+                {"file": path, "sha256": hashlib.sha256(content).hexdigest()}
+                for path, content in house_files(case)
+            ],
+            "rules": ruled(case),
+        },
+        "blocks": [_block(block, forms) for block in case.shipped.blocks],
         "end": _end(case.trap, case.shipped),
         "roundings_largest": _roundings(case),
         "content_id": content_id(case.shipped),
     }
+    if isinstance(key, Draft):
+        document["stands_against_it"] = _against(case)
     document["digest"] = hashlib.sha256(_canonical(document)).hexdigest()
     return _canonical(document)
 
@@ -88,7 +95,29 @@ def _source(path: str, written_as: str, content: bytes) -> dict[str, str]:
     }
 
 
-def _block(one: ShippedBlock) -> dict[str, object]:
+def _counted(key: Key) -> Iterable[Verdict]:
+    """The verdicts that there can be."""
+    return Verdict if isinstance(key, Draft) else (Verdict.PASS, Verdict.ALLOWED)
+
+
+def _against(case: Case) -> list[dict[str, object]]:
+    """Every finding that keeps a draft from being more than one, and every check that never ran."""
+    names = written_names(case)
+    found: list[dict[str, object]] = [
+        {
+            "name": one.name,
+            "verdict": one.verdict.value,
+            "message": one.message,
+            "file": names.get(one.place.file, one.place.file),
+            "line": one.place.line,
+        }
+        for one in case.blocked
+    ]
+    found += [{"name": name, "verdict": "not run", "message": why} for name, why in case.not_run]
+    return found
+
+
+def _block(one: ShippedBlock, forms: Iterable[str]) -> dict[str, object]:
     block = one.block
     return {
         "index": block.index + 1,
@@ -103,6 +132,7 @@ def _block(one: ShippedBlock) -> dict[str, object]:
         "duration_s": exact(block.duration_s),
         "duration_decimal_s": decimal(block.duration_s),
         "table": table_name(block),
+        "also": {form: also_name(block, form) for form in forms},
         "drives": drives_name(block) if block.drives else None,
         "strays_V": _strays(one),
     }

@@ -1,4 +1,4 @@
-"""`Cleared` → a published folder, whole or not at all.
+"""`Cleared` → a published folder, whole or not at all; `Draft` → one whose name says so.
 
 A temporary sibling is filled, flushed, read back by a second reader and renamed into place; an
 older folder is replaced only when wellseq made it and nobody added to it.  Whatever fails, what
@@ -8,40 +8,45 @@ server; what fsync promises there is up to the server.)
 
 from __future__ import annotations
 
-import hashlib
 import json
 import os
-from collections.abc import Callable, Iterable, Sequence
+from collections.abc import Callable, Sequence
 from pathlib import Path
 
 from wellseq.base.finding import Finding
-from wellseq.checks.judging import Cleared, clear
-from wellseq.emit.contents import contents
-from wellseq.emit.lock import NO_FOLLOW, sole_writer
-from wellseq.emit.manifest import MANIFEST, SCHEMA, Written, manifest
+from wellseq.emit.contents import contents, missing
+from wellseq.emit.keys import Draft, Key, opens
+from wellseq.emit.lock import sole_writer
+from wellseq.emit.manifest import DRAFT_SCHEMA, MANIFEST, SCHEMA, manifest
+from wellseq.emit.single import CannotPublish, Written, cause, write_new
 from wellseq.emit.swap import put_in_place, remove, restore, sync_folder
 
+__all__ = ["CannotPublish", "Miswritten", "refuse_foreign", "write_folder"]
 Reread = Callable[[Path], Sequence[Finding]]
 MANIFEST_BYTES_MAX = 256 * 2**20
-
-
-class CannotPublish(Exception):
-    """The folder cannot be written; the sentence says why, and nothing was changed."""
+DRAFT_ENDING = "-draft"
+"""How the name of a draft's folder ends."""
 
 
 class Miswritten(Exception):
     """What was written does not read back as what was cleared: a fault of wellseq's own."""
 
 
-def write_folder(cleared: Cleared, target: Path, reread: Reread) -> None:
+def write_folder(key: Key, target: Path, reread: Reread, also: Sequence[str] = ()) -> None:
     """Write the tables, reports and copies of a cleared case to a folder named `target`.
 
-    `reread` judges the finished folder by other code before it is published.  Raises TypeError for
-    anything but a key cut by `clear`, CannotPublish when the folder cannot be written or must not
-    be replaced, Miswritten when `reread` finds anything.
+    `also` names further forms of every table.  `reread` judges the finished folder by other code
+    before it is published.  Raises TypeError for anything but a key cut by `clear` or the key of a
+    draft, CannotPublish when the folder cannot be written or must not be replaced, Miswritten when
+    `reread` finds anything.
     """
-    if not isinstance(cleared, Cleared) or clear(cleared.case) is None:
+    if not opens(key):
         raise TypeError("only what was cleared is published")
+    if isinstance(key, Draft) and not target.name.endswith(DRAFT_ENDING):
+        raise CannotPublish(f"{target}: the folder of a draft has a name that ends in -draft")
+    needed = missing(also)
+    if needed:
+        raise CannotPublish(f"{target}: {needed}")
     if target.name in ("", "..") or target.is_mount():
         raise CannotPublish(f"{target}: name a folder to write, inside an existing one")
     if not target.parent.is_dir():
@@ -49,14 +54,14 @@ def write_folder(cleared: Cleared, target: Path, reread: Reread) -> None:
     lock = target.with_name(f".{target.name}.wellseq-lock")
     try:
         with sole_writer(lock):
-            _replace(cleared, target, reread)
+            _replace(key, target, reread, also)
     except BlockingIOError as error:
         raise CannotPublish(f"{target}: another wellseq is writing this folder just now") from error
     except OSError as error:
-        raise CannotPublish(f"{target}: {_cause(error)}") from error
+        raise CannotPublish(f"{target}: {cause(error)}") from error
 
 
-def _replace(cleared: Cleared, target: Path, reread: Reread) -> None:
+def _replace(key: Key, target: Path, reread: Reread, also: Sequence[str]) -> None:
     fresh = target.with_name(f".{target.name}.wellseq-new")
     aside = target.with_name(f".{target.name}.wellseq-old")
     restore(target, aside)
@@ -66,7 +71,7 @@ def _replace(cleared: Cleared, target: Path, reread: Reread) -> None:
     refuse_foreign(target)
     try:
         os.mkdir(fresh)
-        _fill(fresh, cleared)
+        _fill(fresh, key, also)
         wrong = reread(fresh)
         if wrong:
             said = "; ".join(f"{finding.message} [{finding.name}]" for finding in wrong[:3])
@@ -78,33 +83,19 @@ def _replace(cleared: Cleared, target: Path, reread: Reread) -> None:
             remove(aside)
 
 
-def _fill(folder: Path, cleared: Cleared) -> None:
+def _fill(folder: Path, key: Key, also: Sequence[str]) -> None:
     """Write every file and, last, the manifest that has all their hashes."""
     written: dict[str, Written] = {}
-    for path, pieces in contents(cleared):
+    for path, pieces in contents(key, also):
         if path in written:
             raise ValueError(f"two files want the name {path}")
         if not (folder / path).parent.is_dir():
             (folder / path).parent.mkdir(parents=True)
-        written[path] = _write(folder / path, pieces)
-    _write(folder / MANIFEST, [manifest(cleared, written)])
+        written[path] = write_new(folder / path, pieces)
+    write_new(folder / MANIFEST, [manifest(key, written, also)])
     for inner in sorted(file for file in folder.rglob("*") if file.is_dir()):
         sync_folder(inner)
     sync_folder(folder)
-
-
-def _write(path: Path, pieces: Iterable[bytes]) -> Written:
-    flags = os.O_WRONLY | os.O_CREAT | os.O_EXCL | getattr(os, "O_BINARY", 0) | NO_FOLLOW
-    digest = hashlib.sha256()
-    size = 0
-    with os.fdopen(os.open(path, flags, 0o644), "wb") as stream:
-        for piece in pieces:
-            stream.write(piece)
-            digest.update(piece)
-            size += len(piece)
-        stream.flush()
-        os.fsync(stream.fileno())
-    return Written(digest.hexdigest(), size)
 
 
 def refuse_foreign(target: Path) -> None:
@@ -152,12 +143,7 @@ def _listed(path: Path) -> set[str] | None:
         document = json.loads(path.read_bytes())
     except (OSError, ValueError, RecursionError):
         return None
-    if not isinstance(document, dict) or document.get("schema") != SCHEMA:
+    if not isinstance(document, dict) or document.get("schema") not in (SCHEMA, DRAFT_SCHEMA):
         return None
     files = document.get("files")
     return set(files) if isinstance(files, dict) else None
-
-
-def _cause(error: OSError) -> str:
-    reason = (error.strerror or type(error).__name__).lower()
-    return f"it cannot be written: {reason}"

@@ -16,7 +16,7 @@ from collections import OrderedDict
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from math import isfinite, pi, sqrt
-from typing import Protocol
+from typing import Any, Protocol
 
 import numpy as np
 from numpy.typing import ArrayLike
@@ -78,7 +78,8 @@ class Field:
 
     `electrodes` names in order, `radius_m` of the bore, `z_m` (nz,) nodes 8 radii beyond the stack,
     `phi` (5, ne, nz) derivatives 0 … 4 on the axis per V, `error_V_per_V` between nodes,
-    `gap_error_V_per_V` (ne,) what the rule for gaps leaves out, an estimate.
+    `gap_error_V_per_V` (ne,) what the rules for gaps leave out, an estimate.  `memory` is for
+    floors above: what they found out in this field, by everything that it depends on.
     """
 
     def __init__(self, trap: TrapLike) -> None:
@@ -94,13 +95,14 @@ class Field:
         self.z_m = axis.z_m
         self.step_m = axis.step_m
         self.error_V_per_V = uniform.interpolation_error(stack, axis)
-        self.gap_error_V_per_V = uniform.gap_error(stack)
+        self.gap_error_V_per_V = uniform.gap_error(stack).sum(axis=1)
         self._stack, self._axis = stack, axis
         self._spans = [(float(part.from_m), float(part.to_m)) for part in parts]
         self._index = {normal(name): i for i, name in enumerate(self.electrodes)}
         self._curves: OrderedDict[bytes, Curve] = OrderedDict()
         self._sizes: dict[int, FloatArray] = {}
         self._drifts: dict[tuple[bytes, int], FloatArray] = {}
+        self.memory: dict[str, dict[bytes, Any]] = {}
         shape = (ORDERS, len(parts), axis.count)
         self.phi = cache.remembered(self._key(), shape, self._solve)
         self.phi.flags.writeable = False

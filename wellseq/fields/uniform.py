@@ -1,20 +1,13 @@
 """A stack of electrodes in one bore → the potential of each at 1 V, on and off the axis.
 
-Laplace's equation in a tube of radius a whose wall carries f_e(z): 1 on electrode e, 0 on all
-others and on the grounded tube that goes on beyond the stack, straight in between across a gap.
-Fourier
-transform along z:  phi_e(r, z) = (1/2π) ∫ F_e(k) I0(kr)/I0(ka) e^{ikz} dk,  F_e the transform of
-f_e; derivatives multiply it by (ik)^m and are never differenced.  The integral is a sum over a
-periodic box (an inverse real FFT), exponentially exact: its images stand 16 a away and weigh
-e^{−2.405·16}. A real gap of width g acts on the axis as a straight one of 1.1027 g (second moment
-of the mouth field of a deep slot); the rule is good to about 2e-6 V/V at g = 0.1 a and 1.5e-5 at
-0.2 a.
+Laplace's equation in a tube of radius a whose wall carries 1 on electrode e, 0 on all others and on
+the grounded tube that goes on beyond the stack.  tube.py solves it exactly; gaps.py says how a real
+gap enters: a straight rise of 1.1027 times its width, and a strip for the field that leaks into it.
 
 Shapes: unit potentials (radii, orders, electrodes, nz).  Units: m, V per V, V/m^n per V.
-Accuracy: 1e-12 V/V, tests/fields/test_uniform.py; gaps against finite elements of real slots,
-tests/fields/test_elements.py.
-Source: J. D. Jackson, Classical Electrodynamics, 3rd ed. (Wiley 1999) sec. 3.7-3.8; Bessel
-functions by numpy.i0 (6e-16), which overflows only beyond 713, where the quotient is below e^{−70}.
+Accuracy: 1e-12 V/V for the wall so described, tests/fields/test_uniform.py; gaps against finite
+elements of real slots, tests/fields/test_elements.py: 1e-6 V/V at g = 0.05 a.
+Source: tube.py, gaps.py.
 """
 
 from __future__ import annotations
@@ -25,27 +18,20 @@ from math import ceil
 from typing import Protocol
 
 import numpy as np
-from numpy.typing import NDArray
 
+from wellseq.fields.gaps import GAP_FACTOR, gap_left, leak, wall_slope
 from wellseq.fields.hermite import QUINTIC_ERROR, FloatArray
+from wellseq.fields.tube import RADIUS_MAX, SLOWEST_MODE, Axis, Box, Wall
 
-ComplexArray = NDArray[np.complex128]
-METHOD = "uniform bore, Fourier box, 1"
-GAP_FACTOR = 1.1027
-SLOWEST_MODE = 2.404825557695773
-"""First zero of J0: beyond the stack everything decays as exp(−this · z/a)."""
+__all__ = ["RADIUS_MAX", "SLOWEST_MODE", "Axis"]
+
+METHOD = "uniform bore, Fourier box, leaking gaps, 2"
 REACH_RADII = 8.0
-IMAGE_RADII = 16.0
 STEPS_PER_RADIUS = 22
 NODES_MAX = 40_000
-RADIUS_MAX = 0.9
-STEP_SLOPE = 0.66312
-"""sup of the slope of the unit step on the axis, in 1/a: 1/π ∫ dk/I0(k)."""
 STEP_SUPREMA = (189.9, 1461.4, 9657.0)
 """sup over z of the 6th, 7th and 8th derivative of the unit step on the axis, in a^−n (tested)."""
 _ROUNDING = 1e-13
-_BESSEL_MAX = 700.0
-_NYQUIST_STEPS = 14
 
 
 class Electrode(Protocol):
@@ -80,19 +66,15 @@ class Stack:
     width_m: FloatArray
     radius_m: float
 
-
-@dataclass(frozen=True, slots=True)
-class Axis:
-    """Equally spaced points: `count` of them from `start_m` in steps of `step_m` (m)."""
-
-    start_m: float
-    step_m: float
-    count: int
-
-    @property
-    def z_m(self) -> FloatArray:
-        """The points (count,), in m."""
-        return np.asarray(self.start_m + self.step_m * np.arange(self.count))
+    def wall(self) -> Wall:
+        """What the wall carries, leaks included."""
+        count = self.centre_m.size - 1
+        rise = np.zeros((count, count + 1))
+        rise[np.arange(count), np.arange(count)] = 1.0
+        rise[np.arange(count), np.arange(1, count + 1)] = -1.0
+        slope = wall_slope(self.centre_m, self.centre_m, self.width_m, self.radius_m)
+        strip = leak(rise, slope, self.width_m)
+        return Wall(self.radius_m, self.centre_m, self.width_m, rise, strip)
 
 
 def stack_of(electrodes: Sequence[Electrode]) -> Stack:
@@ -145,21 +127,12 @@ def interpolation_error(stack: Stack, axis: Axis, order: int = 0) -> float:
 
 
 def gap_error(stack: Stack) -> FloatArray:
-    """Estimate (ne,) of what the gap rule leaves out on the axis, V per V on each electrode.
+    """Estimate (ne, ne + 1), V per V, of what the rules for gaps leave out of every electrode.
 
-    A field E that stands normal on the wall at a gap (from all other edges) leaks into the slot and
-    acts like a strip of area E g²/2π on the wall; the rule is exact only where E = 0, at a gap far
-    from any other edge.  E of a unit step at distance z is Σ exp(−j_n z/a)/a, j_n ≈ (n − 1/4) π.
-    Next order: 1e-3 (g/a)³, from finite elements of one gap.
+    At each edge: the greatest error on the axis there.  Source: gaps.py.
     """
-    a = stack.radius_m
-    place, gap = stack.centre_m / a, stack.width_m / (GAP_FACTOR * a)
-    offset = place[:, None] - place[None, :]
-    distance = np.where(offset == 0.0, np.inf, np.abs(offset))
-    normal = np.exp(-0.75 * np.pi * distance) / -np.expm1(-np.pi * distance) * np.sign(offset)
-    leak = gap**2 / (2 * np.pi) * STEP_SLOPE
-    own = 1e-3 * (gap[:-1] ** 3 + gap[1:] ** 3)
-    return np.asarray(leak @ np.abs(normal[:, :-1] - normal[:, 1:]) + own)
+    wall = stack.wall()
+    return gap_left(wall, wall.centre_m, wall.rise)
 
 
 def unit_potentials(
@@ -171,12 +144,12 @@ def unit_potentials(
     radius.
     """
     radii, powers = tuple(radii_m), tuple(orders)
-    box = _Box(stack, axis, max(map(abs, radii), default=0.0))
-    wall = box.wall_amplitudes()
-    result = np.empty((len(radii), len(powers), wall.shape[0], axis.count))
+    box = _box(stack, axis, max(map(abs, radii), default=0.0))
+    amplitude = box.amplitudes(stack.wall())
+    result = np.empty((len(radii), len(powers), amplitude.shape[0], axis.count))
     for i, radius_m in enumerate(radii):
         for j, order in enumerate(powers):
-            result[i, j] = box.potential(wall, radius_m, order)
+            result[i, j] = box.potential(amplitude, radius_m, order)
     return result
 
 
@@ -189,74 +162,11 @@ def potential_nodes(stack: Stack, vector: FloatArray, radius_m: float) -> tuple[
     base = axis_of(stack)
     times = ceil(base.step_m * 16 / max(stack.radius_m - abs(radius_m), 0.1 * stack.radius_m))
     axis = Axis(base.start_m, base.step_m / times, (base.count - 1) * times + 1)
-    box = _Box(stack, axis, abs(radius_m))
-    wall = vector @ box.wall_amplitudes()
-    return np.stack([box.potential(wall, radius_m, order) for order in range(5)]), axis
+    box = _box(stack, axis, abs(radius_m))
+    amplitude = vector @ box.amplitudes(stack.wall())
+    return np.stack([box.potential(amplitude, radius_m, order) for order in range(5)]), axis
 
 
-class _Box:
-    """The periodic box: wave numbers, and the sums over them."""
-
-    def __init__(self, stack: Stack, axis: Axis, radius_m: float) -> None:
-        a = stack.radius_m
-        if not radius_m <= RADIUS_MAX * a * (1 + 1e-12):
-            raise ValueError(
-                f"r = {radius_m:g} m is beyond {RADIUS_MAX:g} of the bore radius {a:g} m"
-            )
-        self.stack, self.axis = stack, axis
-        self.times = max(1, ceil(axis.step_m * _NYQUIST_STEPS / (a - radius_m)))
-        self.step_m = axis.step_m / self.times
-        stop_m = axis.start_m + axis.step_m * (axis.count - 1)
-        reach = max(
-            stop_m - axis.start_m,
-            stop_m - stack.centre_m[0],
-            stack.centre_m[-1] - axis.start_m,
-        )
-        self.points = _smooth_even(ceil((reach + IMAGE_RADII * a) / self.step_m))
-        self.k = 2 * np.pi / (self.points * self.step_m) * np.arange(self.points // 2 + 1)
-
-    def wall_amplitudes(self) -> ComplexArray:
-        """Fourier transform of every electrode's wall potential (ne, nk), in m."""
-        stack = self.stack
-        edge = self._phases(stack.centre_m - self.axis.start_m)
-        for width_m in np.unique(stack.width_m[stack.width_m > 0]):
-            edge[stack.width_m == width_m] *= np.sinc(self.k * (width_m / (2 * np.pi)))
-        wall = edge[:-1] - edge[1:]
-        wall[:, 1:] *= -1j / self.k[1:]
-        wall[:, 0] = np.diff(stack.centre_m)
-        return wall
-
-    def potential(self, wall: ComplexArray, radius_m: float, order: int) -> FloatArray:
-        """The derivative of this order on the cylinder of radius r: (…, axis.count)."""
-        weight = self._bessel_quotient(abs(radius_m)) * (1j * self.k) ** order / self.step_m
-        line = np.fft.irfft(wall * weight, self.points, axis=-1)
-        return line[..., : (self.axis.count - 1) * self.times + 1 : self.times]
-
-    def _bessel_quotient(self, radius_m: float) -> FloatArray:
-        outer = self.k * self.stack.radius_m
-        quotient = np.zeros_like(outer)
-        near = outer < _BESSEL_MAX
-        quotient[near] = np.i0(self.k[near] * radius_m) / np.i0(outer[near])
-        return quotient
-
-    def _phases(self, place_m: FloatArray) -> ComplexArray:
-        """exp(−ik·place) (places, nk): powers of two short tables, ten times fewer exponentials."""
-        short = 64
-        turn = -1j * self.k[1] * place_m[:, None]
-        fine = np.exp(turn * np.arange(short))
-        coarse = np.exp(turn * short * np.arange(-(-self.k.size // short)))
-        table = coarse[:, :, None] * fine[:, None, :]
-        return np.asarray(table.reshape(place_m.size, -1)[:, : self.k.size])
-
-
-def _smooth_even(count: int) -> int:
-    """The least even number ≥ count whose only prime factors are 2, 3 and 5: fast for the FFT."""
-    count += count % 2
-    while True:
-        rest = count
-        for prime in (2, 3, 5):
-            while rest % prime == 0:
-                rest //= prime
-        if rest == 1:
-            return count
-        count += 2
+def _box(stack: Stack, axis: Axis, r_m: float) -> Box:
+    span_m = float(stack.centre_m[0]), float(stack.centre_m[-1])
+    return Box(stack.radius_m, axis, span_m, r_m)

@@ -215,7 +215,7 @@ class Line(Part):
     """A digital line: an output that the table sets, or an input that `expect` may name.
 
     `role` says what it is to the interlock rules, `safe` in which of its states that thing is safe;
-    both are empty where the trap file does not say.
+    both are None where the trap file does not say.
     """
 
     name: Name
@@ -226,8 +226,8 @@ class Line(Part):
     ]
     initial: Mention
     kind: Annotated[Literal["output", "input"], choice("output", "input")] = "output"
-    role: Annotated[str, choice(*ROLES)] = ""
-    safe: Mention = ""
+    role: Annotated[str, choice(*ROLES)] | None = None
+    safe: Mention | None = None
     clock_s: Clock = Field(alias="clock")
 
     @model_validator(mode="before")

@@ -25,14 +25,14 @@ from wellseq.text.rules import RULES_MAX, parse_rules
 from wellseq.text.rules_tree import RulesTree, RuleText
 
 BYTES_MAX = 1_000_000
-HINT = "files of rules stand in the trap file's folder or below it, as in rules = [\"our.rules\"]"
+HINT = 'files of rules stand in the trap file\'s folder or below it, as in rules = ["our.rules"]'
 
 
 @dataclass(slots=True)
 class ReadRules:
     """What came of reading: the book, every mistake, the laboratory's files as they were read."""
 
-    book: Rulebook = Rulebook()
+    book: Rulebook = field(default_factory=Rulebook)
     mistakes: list[Mistake] = field(default_factory=list)
     sources: list[SourceFile] = field(default_factory=list)
 
@@ -59,20 +59,18 @@ def read_rules(trap: Trap, path: Path | None) -> ReadRules:
     reading = _Reading(trap)
     for _, tree in house_trees():
         reading.take(tree, house=True)
-    own: list[str] = []
-    for written in trap.site.rules if path is not None else ():
-        shown = beside(trap.file, written)
-        if shown in own:
-            reading.refuse("name-reused", f"'{printable(written)}' is named twice")
-            continue
-        tree_or_none = reading.open(written, shown, path)
-        if tree_or_none is not None:
-            own.append(shown)
-            reading.take(tree_or_none, house=False)
+    own = reading.open_all(path) if path is not None else []
+    for tree in own:
+        reading.take(tree, house=False)
     result = reading.result
     house = tuple(file for file, _ in house_trees())
-    result.book = Rulebook(tuple(reading.rules), house, tuple(own))
+    result.book = Rulebook(tuple(reading.rules), house, tuple(tree.file for tree in own))
     return result
+
+
+def own_trees(trap: Trap, path: Path) -> list[RulesTree]:
+    """The laboratory's files that can be read, as they are written; nothing is settled."""
+    return _Reading(trap).open_all(path)
 
 
 class _Reading:
@@ -88,9 +86,21 @@ class _Reading:
         """A mistake of the trap file's list; it points at the file as a whole."""
         self.result.mistakes.append(Mistake(name, Place(self.trap.file), message, hint))
 
-    def open(self, written: str, shown: str, trap_path: Path | None) -> RulesTree | None:
+    def open_all(self, trap_path: Path) -> list[RulesTree]:
+        """Every file that the trap names and that may be read, in the order named."""
+        found: dict[str, RulesTree] = {}
+        for written in self.trap.site.rules:
+            shown = beside(self.trap.file, written)
+            if shown in found:
+                self.refuse("name-reused", f"'{printable(written)}' is named twice")
+                continue
+            tree = self._open(written, shown, trap_path)
+            if tree is not None:
+                found[shown] = tree
+        return list(found.values())
+
+    def _open(self, written: str, shown: str, trap_path: Path) -> RulesTree | None:
         """Read one file of the laboratory, None when it may not or cannot be read."""
-        assert trap_path is not None
         why = why_not_relative(written)
         if why:
             self.refuse("import-refused", f"rules file '{printable(written)}': {why}", HINT)

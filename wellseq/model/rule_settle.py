@@ -273,7 +273,11 @@ class _Settling:
                 raise Lacking(said)
             self._wrong("unknown-name", name.place, said, f'write role = "{name.text}" at one')
         return book.all_of(
-            tuple(book.LineIn(line.name, line.safe, f"{line.name} {line.safe}") for line in lines)
+            tuple(
+                book.LineIn(line.name, line.safe, f"{line.name} {line.safe}")
+                for line in lines
+                if line.safe is not None
+            )
         )
 
     def _happening(self, said: tree.Happens) -> book.Condition:

@@ -110,7 +110,7 @@ class Awaiting:
 
 @dataclass(frozen=True, slots=True)
 class InBlock:
-    """The rows of a block are played: of the one that begins at a trigger, or of the first, `run`."""
+    """The rows of a block are played: of one that begins at a trigger, or of the first, `run`."""
 
     block: str
     text: str

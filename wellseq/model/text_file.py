@@ -13,6 +13,7 @@ from pathlib import Path
 
 from wellseq.base.finding import Mistake
 from wellseq.base.place import Place
+from wellseq.base.unsaved import buffer_of
 from wellseq.text.mistakes import quoted
 
 # A pipe would block the opening, and a link could be put in place between two looks at the path.
@@ -36,6 +37,9 @@ def read_text(path: Path, shown: str, bytes_max: int) -> str | Mistake:
 
 def _bytes_of(path: Path, bytes_max: int) -> bytes | str:
     """The content, or the reason why there is none."""
+    buffer = buffer_of(path)
+    if buffer is not None:
+        return buffer if len(buffer) <= bytes_max else _too_long(bytes_max)
     try:
         fault = _fault_of(os.lstat(path), bytes_max)
         if fault:

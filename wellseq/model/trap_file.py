@@ -7,6 +7,7 @@ value in one place hides nothing in another.
 from __future__ import annotations
 
 from collections.abc import Iterator
+from functools import lru_cache
 from itertools import islice
 from pathlib import Path as FilePath
 from typing import Annotated, Any
@@ -66,6 +67,7 @@ def read_trap(path: FilePath, shown: str) -> Read:
     return trap_from(source, shown)
 
 
+@lru_cache(maxsize=8)
 def trap_from(source: str, shown: str) -> Read:
     """Like `read_trap`, for the text of a trap file.  Never raises."""
     parsed = parse(source, shown)

@@ -249,7 +249,7 @@ def _states(entries: Sequence[Entry]) -> Iterator[Fault]:
         if not isinstance(line, Line):
             continue
         for key, state in (("initial", line.initial), ("safe", line.safe)):
-            if state not in line.states and (state or key == "initial"):
+            if state is not None and state not in line.states:
                 message = f"line {quoted(line.name)} has no state {quoted(state)}"
                 yield Fault(
                     (*entry.path, key),
@@ -259,9 +259,10 @@ def _states(entries: Sequence[Entry]) -> Iterator[Fault]:
                     known=line.states,
                     what="states",
                 )
-        if line.role and not line.safe:
-            message = f"line {quoted(line.name)} has a role and does not say in which state it is safe"
-            yield Fault((*entry.path, "role"), "syntax", message, f'write safe = "{line.states[0]}"')
+        if line.role is not None and line.safe is None:
+            message = f"line {quoted(line.name)} has a role and does not say when it is safe"
+            hint = f'write one of its states, as in safe = "{line.states[0]}"'
+            yield Fault((*entry.path, "role"), "syntax", message, hint)
 
 
 def _pairs(stack: Sequence[Entry], pairs: Numbered) -> Iterator[Fault]:

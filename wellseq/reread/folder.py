@@ -11,37 +11,33 @@ import hashlib
 import os
 import stat
 from collections.abc import Callable, Iterable
+from dataclasses import dataclass
 from pathlib import Path
 from typing import TypeVar
 
 from wellseq.base.finding import Finding, Verdict
 from wellseq.base.names import printable
 from wellseq.base.place import Place
-from wellseq.reread.claims import UNSOUND as CLAIMS_UNSOUND
-from wellseq.reread.claims import judge_claims
-from wellseq.reread.content import content_id
-from wellseq.reread.drives import UNSOUND as DRIVES_UNSOUND
-from wellseq.reread.drives import read_drives
-from wellseq.reread.neighbours import too_far_apart
-from wellseq.reread.plan import SCHEMA, SCHEMA_VERSION, Plan, plan
+from wellseq.reread.meaning import Meaning, judge, read_meaning
+from wellseq.reread.plan import DRAFT_SCHEMA, SCHEMA, SCHEMA_VERSION
 from wellseq.reread.reading import Part, Unsound, canonical, parse
-from wellseq.reread.rules import wrongs
-from wellseq.reread.table import UNSOUND as TABLE_UNSOUND
-from wellseq.reread.table import Table, read_table
 
 MANIFEST = "manifest.json"
-CLAIMS = "claims.json"
-CAUTIONS = "cautions.md"
 MANIFEST_BYTES_MAX = 256 * 2**20
 CHECKS = (
     "folder-unreadable",
+    "folder-is-draft",
     "manifest-unsound",
     "file-missing",
     "file-strange",
     "file-altered",
     "table-unsound",
     "drives-unsound",
+    "description-unsound",
+    "form-unsound",
+    "roundings-unsound",
     "claims-unsound",
+    "depth-not-held",
     "content-differs",
 )
 """The names of everything that can be wrong with a folder."""
@@ -49,12 +45,40 @@ CHECKS = (
 Result = TypeVar("Result")
 
 
+@dataclass(frozen=True, slots=True)
+class Reading:
+    """What came of a folder: findings, what was examined in words, and what the folder says.
+
+    `meaning` is None unless nothing at all was found.
+    """
+
+    findings: tuple[Finding, ...]
+    examined: str
+    meaning: Meaning | None
+
+
 def verify(folder: Path, shown: str | None = None) -> tuple[Finding, ...]:
     """Everything wrong with a published folder; empty when it is as wellseq wrote it.
 
     `shown` is the folder's name in the findings' places.  Never raises for what is in the folder.
     """
-    return _Reader(folder, str(folder) if shown is None else shown).read()
+    return read_folder(folder, shown).findings
+
+
+def read_folder(folder: Path, shown: str | None = None) -> Reading:
+    """Read and judge a published folder; never raises for what is in it."""
+    reader = _Reader(folder, str(folder) if shown is None else shown)
+    reader.read()
+    findings = tuple(reader.found)
+    said = reader.meaning.examined.sentence() if reader.meaning is not None else ""
+    return Reading(findings, said, None if findings else reader.meaning)
+
+
+def verify_draft(folder: Path) -> tuple[Finding, ...]:
+    """Everything wrong with the bytes of a draft; what they mean is not judged."""
+    reader = _Reader(folder, str(folder))
+    reader.bytes_of_draft()
+    return tuple(reader.found)
 
 
 class _Reader:
@@ -65,18 +89,26 @@ class _Reader:
         self.shown = shown.rstrip("/") or shown
         self.found: list[Finding] = []
         self.files: dict[str, bytes] = {}
+        self.meaning: Meaning | None = None
 
-    def read(self) -> tuple[Finding, ...]:
+    def read(self) -> None:
         """Manifest, hashes, meaning: each only while what it rests on is sound."""
-        manifest = self._try(self._manifest)
+        manifest = self._try(lambda: self._manifest(SCHEMA))
         if manifest is None:
-            return tuple(self.found)
+            return
         self._try(lambda: self._hashes(manifest))
-        if self.found:
-            # What the tables say has no meaning while their bytes are not the ones written.
-            return tuple(self.found)
-        self._try(lambda: self._judge(manifest))
-        return tuple(self.found)
+        # What the tables say has no meaning while their bytes are not the ones written.
+        if not self.found:
+            self.meaning = self._try(lambda: read_meaning(manifest, self.files))
+        meaning = self.meaning
+        if meaning is not None:
+            self._try(lambda: self._say_all(judge(manifest, meaning, self.files)))
+
+    def bytes_of_draft(self) -> None:
+        """Manifest and hashes of a draft."""
+        manifest = self._try(lambda: self._manifest(DRAFT_SCHEMA))
+        if manifest is not None:
+            self._try(lambda: self._hashes(manifest))
 
     def _try(self, work: Callable[[], Result]) -> Result | None:
         try:
@@ -116,10 +148,12 @@ class _Reader:
             except OSError as error:
                 raise Unsound(name, path, f"it cannot be read: {_cause(error)}") from error
 
-    def _manifest(self) -> Part:
+    def _manifest(self, schema: str) -> Part:
         content = self._bytes(MANIFEST, MANIFEST_BYTES_MAX, "folder-unreadable")
         manifest = parse(content, MANIFEST, "manifest-unsound")
-        manifest.word("schema", SCHEMA)
+        if schema == SCHEMA and manifest.text("schema") == DRAFT_SCHEMA:
+            raise Unsound("folder-is-draft", MANIFEST, _against(manifest))
+        manifest.word("schema", schema)
         manifest.whole("schema_version", SCHEMA_VERSION, SCHEMA_VERSION)
         digest = manifest.text("digest")
         rest = {key: value for key, value in manifest.values.items() if key != "digest"}
@@ -161,47 +195,12 @@ class _Reader:
                 found.add(inside.as_posix())
         return found
 
-    # meaning
 
-    def _judge(self, manifest: Part) -> None:
-        made = plan(manifest)
-        self._listed(manifest, made)
-        tables: list[Table] = []
-        drives: list[list[list[str]]] = []
-        for block in made.blocks:
-            tables.append(read_table(self._of(block.table, TABLE_UNSOUND), made, block))
-            if block.drives is None:
-                drives.append([])
-            else:
-                content = self._of(block.drives, DRIVES_UNSOUND)
-                drives.append(read_drives(content, block, made.rings))
-        if content_id(made, tables, drives) != made.content_id:
-            raise Unsound("content-differs", MANIFEST, "the tables are not those of its content id")
-        self._say_all(wrongs(made, tables))
-        self._say_all(too_far_apart(made, tables, drives))
-        claims = parse(self._of(CLAIMS, CLAIMS_UNSOUND), CLAIMS, CLAIMS_UNSOUND)
-        self._say_all(judge_claims(claims, made))
-
-    def _listed(self, manifest: Part, made: Plan) -> None:
-        """The copies of the sources are the ones named, and no file is there for nothing."""
-        expected = {CLAIMS, CAUTIONS}
-        expected |= {block.table for block in made.blocks}
-        expected |= {block.drives for block in made.blocks if block.drives is not None}
-        for source in manifest.parts("sources"):
-            path = source.text("file")
-            expected.add(path)
-            content = self._of(path, "manifest-unsound")
-            if hashlib.sha256(content).hexdigest() != source.text("sha256"):
-                raise source.wrong("sha256", "that of the copy in the folder")
-        if expected != set(self.files):
-            odd = min(expected ^ set(self.files))
-            raise Unsound("manifest-unsound", MANIFEST, f"{odd} has no part in this folder")
-
-    def _of(self, path: str, name: str) -> bytes:
-        content = self.files.get(path)
-        if content is None:
-            raise Unsound(name, MANIFEST, f"the manifest does not list {path}")
-        return content
+def _against(manifest: Part) -> str:
+    """What a draft says of itself."""
+    names = sorted({part.text("name") for part in manifest.parts("stands_against_it")})
+    said = f": {', '.join(names)}"[:200] if names else ""
+    return f"this is a draft, written for looking at and not for playing{said}"
 
 
 def _cause(error: OSError) -> str:

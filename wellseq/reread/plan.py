@@ -13,7 +13,10 @@ from math import lcm
 from wellseq.reread.reading import Part
 
 SCHEMA = "wellseq/folder"
-SCHEMA_VERSION = 1
+DRAFT_SCHEMA = "wellseq/draft"
+SCHEMA_VERSION = 2
+FORMS = ("hdf5", "npz")
+"""Further forms that a table may have."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -33,6 +36,9 @@ class Converter:
     clock_s: Fraction
     slew_V_per_s: Fraction
     holds: bool
+    gain_spread: Fraction = Fraction(0)
+    offset_spread_V: Fraction = Fraction(0)
+    noise_V: Fraction = Fraction(0)
 
     @property
     def code_max(self) -> int:
@@ -61,6 +67,8 @@ class Switch:
     levels: tuple[Fraction | str, ...]
     clock_s: Fraction
     settle_s: Fraction
+    spread_V: Fraction = Fraction(0)
+    noise_V: Fraction = Fraction(0)
 
 
 @dataclass(frozen=True, slots=True)
@@ -70,6 +78,17 @@ class Line:
     name: str
     states: tuple[str, ...]
     clock_s: Fraction
+
+
+@dataclass(frozen=True, slots=True)
+class Electrode:
+    """An electrode: where it stands along the axis, its inner radius (m), what drives it."""
+
+    name: str
+    from_m: Fraction
+    to_m: Fraction
+    radius_m: Fraction
+    output: str
 
 
 @dataclass(frozen=True, slots=True)
@@ -93,6 +112,7 @@ class BlockPlan:
     duration_s: Fraction
     table: str
     drives: str | None
+    also: Mapping[str, str]
     strays_V: Mapping[str, Fraction]
 
 
@@ -104,6 +124,9 @@ class Plan:
     switches: tuple[Switch, ...]
     lines: tuple[Line, ...]
     rings: Mapping[str, int]
+    electrodes: tuple[Electrode, ...]
+    ends: str
+    patch_V: Fraction
     neighbours: tuple[Neighbours, ...]
     rows_max: int
     blocks: tuple[BlockPlan, ...]
@@ -144,6 +167,9 @@ def plan(manifest: Part) -> Plan:
         rings={
             part.text("name"): part.whole("sectors", 1, 64) for part in trap.parts("electrodes")
         },
+        electrodes=tuple(map(_electrode, trap.parts("electrodes"))),
+        ends=trap.text("ends"),
+        patch_V=trap.number("patch_V"),
         neighbours=tuple(_neighbours(trap, names)),
         rows_max=limits.whole("table_rows", 1),
         blocks=blocks,
@@ -164,6 +190,9 @@ def _converter(part: Part) -> Converter:
         clock_s=part.exact("clock_s", positive=True),
         slew_V_per_s=part.number("slew_V_per_s"),
         holds=part.word("between_rows", "hold", "line") == "hold",
+        gain_spread=part.number("gain_spread"),
+        offset_spread_V=part.number("offset_spread_V"),
+        noise_V=part.number("noise_V"),
     )
     if converter.low_V >= converter.high_V:
         raise part.wrong("high_V", "above low_V")
@@ -186,6 +215,18 @@ def _switch(part: Part, converters: list[str]) -> Switch:
         levels=tuple(levels),
         clock_s=part.exact("clock_s", positive=True),
         settle_s=part.exact("settle_s"),
+        spread_V=part.number("spread_V"),
+        noise_V=part.number("noise_V"),
+    )
+
+
+def _electrode(part: Part) -> Electrode:
+    return Electrode(
+        part.text("name"),
+        part.number("from_m"),
+        part.number("to_m"),
+        part.number("radius_m"),
+        part.text("output"),
     )
 
 
@@ -216,6 +257,9 @@ def _block(part: Part, at: int) -> BlockPlan:
     drives = part.values.get("drives")
     if drives is not None and not isinstance(drives, str):
         raise part.wrong("drives", "a file name or null")
+    also = part.part("also")
+    if not set(also.values) <= set(FORMS):
+        raise part.wrong("also", f"made of {' and '.join(FORMS)}")
     return BlockPlan(
         index=at,
         name=part.text("name"),
@@ -225,6 +269,7 @@ def _block(part: Part, at: int) -> BlockPlan:
         duration_s=part.exact("duration_s"),
         table=part.text("table"),
         drives=drives,
+        also={form: also.text(form) for form in also.values},
         strays_V={name: strays.number(name) for name in strays.values},
     )
 

@@ -17,6 +17,7 @@ from wellseq.reread.reading import Unsound
 
 UNSOUND = "table-unsound"
 CHUNK_ROWS = 65536
+CHUNK_BYTES = 4 * 2**20
 WHOLE = re.compile(r"0|[1-9][0-9]{0,17}")
 
 
@@ -36,40 +37,48 @@ class Table:
 def read_table(content: bytes, plan: Plan, block: BlockPlan) -> Table:
     """Read a whole table; raises Unsound at its first line that is not as it must be."""
     file = block.table
-    lines = _lines(content, file)
+    lines = _count(content, file)
+    body = content.index(b"\r\n") + 2
     head = _head(plan)
-    if lines[0] != ",".join(head):
+    if content[: body - 2] != ",".join(head).encode("utf-8"):
         raise Unsound(UNSOUND, file, "the first line does not name the columns of this trap")
-    rows = lines[1:]
-    if len(rows) != block.rows:
-        raise Unsound(
-            UNSOUND, file, f"{len(rows)} rows are here, {block.rows} were written", len(lines)
-        )
+    if lines - 1 != block.rows:
+        message = f"{lines - 1} rows are here, {block.rows} were written"
+        raise Unsound(UNSOUND, file, message, lines)
     table = Table(block, array("q"), {name: array("q") for name in _names(plan)}, {})
-    for start in range(0, len(rows), CHUNK_ROWS):
-        _take(table, plan, rows[start : start + CHUNK_ROWS], len(head), start + 2)
+    for run in _runs(content, body, file):
+        _take(table, plan, run, len(head), len(table.ticks) + 2)
     _in_order(table)
     table.changes.update((name, _changes(column)) for name, column in table.columns.items())
     return table
 
 
+def _count(content: bytes, file: str) -> int:
+    """The number of lines, all of which must end in CR LF."""
+    if b'"' in content:
+        raise Unsound(UNSOUND, file, "a table holds no quotes")
+    lines = content.count(b"\r\n")
+    if not content.endswith(b"\r\n") or lines < 2:
+        raise Unsound(UNSOUND, file, "the last line is cut off", lines + 1)
+    if content.count(b"\r") != lines or content.count(b"\n") != lines:
+        raise Unsound(UNSOUND, file, "a line does not end in CR LF")
+    return lines
+
+
+def _runs(content: bytes, start: int, file: str) -> Iterator[list[str]]:
+    """The lines from a place on, a few megabytes at a time."""
+    while start < len(content):
+        end = content.index(b"\r\n", min(start + CHUNK_BYTES, len(content) - 2))
+        try:
+            text = content[start:end].decode("utf-8")
+        except UnicodeDecodeError as error:
+            raise Unsound(UNSOUND, file, "this is not UTF-8 text") from error
+        yield text.split("\r\n")
+        start = end + 2
+
+
 def _changes(column: array[int]) -> list[int]:
     return [row for row, (before, after) in enumerate(pairwise(column), 1) if before != after]
-
-
-def _lines(content: bytes, file: str) -> list[str]:
-    try:
-        text = content.decode("utf-8")
-    except UnicodeDecodeError as error:
-        raise Unsound(UNSOUND, file, "this is not UTF-8 text") from error
-    if '"' in text:
-        raise Unsound(UNSOUND, file, "a table holds no quotes")
-    lines = text.split("\r\n")
-    if lines[-1] != "" or len(lines) < 3:
-        raise Unsound(UNSOUND, file, "the last line is cut off", len(lines))
-    if text.count("\r") != len(lines) - 1 or text.count("\n") != len(lines) - 1:
-        raise Unsound(UNSOUND, file, "a line does not end in CR LF")
-    return lines[:-1]
 
 
 def _head(plan: Plan) -> list[str]:

@@ -9,10 +9,10 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterable, Iterator, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from fractions import Fraction
 
-from wellseq.rules.cuts import Cuts, NOTHING, after, before, within
+from wellseq.rules.cuts import NOTHING, Cuts, after, before, within
 from wellseq.timeline.shipped import Shipped
 from wellseq.timeline.timeline import Block, Timeline
 
@@ -48,6 +48,15 @@ class Run:
     starts: tuple[int, ...]
     low: int
     high: int
+
+    @property
+    def end(self) -> int:
+        """The last instant of the whole run."""
+        return self.starts[-1] + self.lengths[-1]
+
+    def between(self, start: int, end: int) -> Run:
+        """The part of a run between two instants, as far as there is a run."""
+        return replace(self, low=max(self.low, before(start)), high=min(self.high, after(end)))
 
 
 class Axis:
@@ -127,7 +136,7 @@ class Axis:
 def _fine_enough(times: Iterable[Fraction]) -> int:
     """A number of units per second in which all of these times are whole, and their halves too."""
     per_s = UNITS_PER_S
-    for denominator in {time.denominator for time in times}:
+    for denominator in sorted({time.denominator for time in times}):
         finer = math.lcm(per_s, 2 * denominator)
         if finer > UNITS_PER_S_MAX:
             return per_s * (UNITS_PER_S_MAX // per_s)

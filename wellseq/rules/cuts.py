@@ -55,7 +55,9 @@ def meet(*sets: Cuts) -> Cuts:
     """The instants of all of the sets."""
     if not all(sets):
         return NOTHING
-    return sets[0] if len(sets) == 1 else at_least(sets, len(sets))
+    if len(sets) == 1 or (len(sets) == 2 and sets[0] == sets[1]):
+        return sets[0]
+    return at_least(sets, len(sets))
 
 
 def complement(cuts: Cuts, low: int, high: int) -> Cuts:
@@ -67,7 +69,9 @@ def complement(cuts: Cuts, low: int, high: int) -> Cuts:
 
 def within(cuts: Cuts, low: int, high: int) -> Cuts:
     """The part of a set between two cuts."""
-    if not cuts or (cuts[0] >= low and cuts[-1] <= high):
+    if not cuts or low >= high:
+        return NOTHING
+    if cuts[0] >= low and cuts[-1] <= high:
         return cuts
     first = bisect_right(cuts, low)
     last = bisect_right(cuts, high - 1)
@@ -158,4 +162,3 @@ def held_after(cuts: Cuts, time: int) -> Cuts:
 def recent_after(cuts: Cuts, time: int) -> Cuts:
     """Some of (t, t + T] lies in X."""
     return joined((start - 2 * time, end & -2) for start, end in parts(cuts))
-

@@ -9,6 +9,7 @@ from pathlib import Path
 from wellseq.base.finding import Mistake
 from wellseq.base.names import printable
 from wellseq.base.place import Place
+from wellseq.base.unsaved import buffer_of
 from wellseq.text.parse import SIZE_MAX, parse
 from wellseq.text.tree import Tree
 
@@ -31,6 +32,9 @@ def read_bytes(path: Path, shown: str) -> bytes | Mistake:
     that nobody writes to would wait for ever.
     """
     name = printable(shown)
+    data = buffer_of(path)
+    if data is not None:
+        return data if len(data) <= SIZE_MAX else _too_long(shown)
     try:
         kind = _kind(os.stat(path).st_mode)
         if kind:
@@ -47,10 +51,12 @@ def read_bytes(path: Path, shown: str) -> bytes | Mistake:
         return _unreadable(shown, f"'{name}' may not be read", "ask for the right to read it")
     except (OSError, ValueError):
         return _unreadable(shown, f"'{name}' cannot be read", "look at the path and the disk")
-    if len(data) > SIZE_MAX:
-        message = f"'{name}' has more than {SIZE_MAX // 1_000_000} MB"
-        return Mistake("too-large", Place(shown), message, "a sequence is a text of statements")
-    return data
+    return data if len(data) <= SIZE_MAX else _too_long(shown)
+
+
+def _too_long(shown: str) -> Mistake:
+    message = f"'{printable(shown)}' has more than {SIZE_MAX // 1_000_000} MB"
+    return Mistake("too-large", Place(shown), message, "a sequence is a text of statements")
 
 
 def decode(data: bytes, shown: str) -> str | Mistake:

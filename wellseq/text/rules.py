@@ -7,7 +7,9 @@ from __future__ import annotations
 
 import re
 from collections.abc import Iterable, Iterator
+from contextlib import suppress
 from functools import lru_cache
+from itertools import pairwise
 from typing import Any
 
 from wellseq.base.data import data_folder
@@ -126,10 +128,8 @@ def parse_rules(source: str, file: str) -> RulesTree:
     source = source.removeprefix("\ufeff")
     mistakes = Mistakes(file)
     reading = _Reading(source, mistakes)
-    try:
+    with suppress(ReadingStops):
         reading.take(scan(source, mistakes, {":": "_COLON"}))
-    except ReadingStops:
-        pass
     return RulesTree(file, tuple(reading.rules), mistakes.listed())
 
 
@@ -211,7 +211,7 @@ class _Reading:
     def _text(self, tokens: list[Token]) -> str:
         """The rule as it was written, on one line and without comments."""
         words = [self.source[token.start : token.end] for token in tokens]
-        gaps = [" " if a.end != b.start else "" for a, b in zip(tokens, tokens[1:], strict=False)]
+        gaps = [" " if a.end != b.start else "" for a, b in pairwise(tokens)]
         return "".join(word + gap for word, gap in zip(words, [*gaps, ""], strict=True))
 
     def _comment(self, line: int) -> str:

@@ -130,7 +130,9 @@ class RuleBuilder:
     def in_state(self, children: list[Any]) -> InState:
         """A line and its state."""
         line, state = children
-        return InState(_name(line), _name(state), state.type == "STRING", line.place.to(state.place))
+        return InState(
+            _name(line), _name(state), state.type == "STRING", line.place.to(state.place)
+        )
 
     def state(self, children: list[Token]) -> Token:
         """The word of a state."""

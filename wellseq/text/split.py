@@ -25,8 +25,8 @@ Item = Statement | Assignment
 Reader = Callable[[list[Token]], Item | None]
 """Turns the tokens of one statement into it, or reports its mistake and returns None."""
 
-_GOES_ON_AFTER = frozenset(("_COMMA", "LPAR", *OPERATORS))
-_GOES_ON_BEFORE = frozenset(("RPAR", "CLAUSE", "BECAUSE", "_ALLOW"))
+GOES_ON_AFTER = frozenset(("_COMMA", "LPAR", *OPERATORS))
+GOES_ON_BEFORE = frozenset(("RPAR", "CLAUSE", "BECAUSE", "_ALLOW"))
 
 
 class _Frame:
@@ -260,7 +260,7 @@ def _defined(tokens: list[Token]) -> Iterator[str]:
 
 def _goes_on(tokens: list[Token], kind: str) -> bool:
     """Whether a statement goes on over the end of its line, before a token of that kind."""
-    if tokens[-1].type in _GOES_ON_AFTER or kind in _GOES_ON_BEFORE:
+    if tokens[-1].type in GOES_ON_AFTER or kind in GOES_ON_BEFORE:
         return True
     return len(tokens) == 1 and tokens[0].type == "STRING"
 

@@ -17,7 +17,7 @@ import numpy as np
 import numpy.typing as npt
 
 from wellseq.fields.following import follow, locate
-from wellseq.fields.inverse import Impossible, evaporation_path
+from wellseq.fields.inverse import Impossible, Path, evaporation_path
 from wellseq.model import effects
 from wellseq.model.effects import Effect
 from wellseq.model.trap import Converter
@@ -133,16 +133,16 @@ def lower_depth(
         return
     solved = drawing.field_of()
     columns = [solved.electrodes.index(electrode) for electrode in electrodes]
-    path = evaporation_path(
-        solved,
-        drawing.clouds[cloud].species.charge_sign,
-        drawing.trail.vectors[-1],
-        columns,
-        z_m,
-        to_V,
-        [converter.reach_V for converter in converters],
-        equal_ratios=exponentially,
-    )
+    sign = drawing.clouds[cloud].species.charge_sign
+    reaches = [converter.reach_V for converter in converters]
+    vector = drawing.trail.vectors[-1]
+    paths = solved.memory.setdefault("paths of evaporation", {})
+    key = repr((sign, vector.tobytes(), columns, z_m, to_V, reaches, exponentially)).encode()
+    if key not in paths:
+        paths[key] = evaporation_path(
+            solved, sign, vector, columns, z_m, to_V, reaches, equal_ratios=exponentially
+        )
+    path: Path | Impossible = paths[key]
     if isinstance(path, Impossible):
         drawing.refuse(
             "depth-not-reachable",

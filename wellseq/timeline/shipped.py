@@ -67,7 +67,7 @@ class ShippedBlock:
     strays: tuple[Stray, ...]
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, weakref_slot=True)
 class Shipped:
     """All blocks as shipped; the column names in order."""
 

@@ -119,7 +119,8 @@ class Holding:
     def __init__(self, field: Field, patch_V: float) -> None:
         self.field = field
         self.patch_V = patch_V
-        self._known: dict[bytes, Known | None] = {}
+        # Kept with the field, so that the next look at a text that changed a little is quick.
+        self._known: dict[bytes, Known | None] = field.memory.setdefault("proofs of wells", {})
 
     def hold(
         self, sign: int, z_m: float, segment: Segment, floor_V: float
@@ -148,9 +149,17 @@ class Holding:
         if not np.any(shape_V):
             return False
         proven = known.proven
-        weights = oscillation(self.field, proven.core, proven.left, proven.right)
+        weights = self._weights(proven.core, proven.left, proven.right)
         depth = min(known.left.lower_V, known.right.lower_V)
         return float(shape_V @ weights) > max(LOOSE_V, LOOSE_SHARE * max(depth - floor_V, 0.0))
+
+    def _weights(self, core: Region, left: Region, right: Region | None) -> Vector:
+        """How far each electrode's error moves a depth over these regions; kept with the field."""
+        kept: dict[bytes, Vector] = self.field.memory.setdefault("weights of errors", {})
+        key = repr((core, left, right)).encode()
+        if key not in kept:
+            kept[key] = oscillation(self.field, core, left, right)
+        return kept[key]
 
     def _solve(self, sign: int, z_m: float, part: Part, ripple_V: float) -> Known | None:
         deviation = part.segment.deviation_V()
@@ -209,7 +218,7 @@ class Holding:
         self, part: Part, proven: Proven, bound: SideBound, region: tuple[int, int]
     ) -> SideDepth:
         segment = part.segment
-        weights = oscillation(self.field, proven.core, region, None)
+        weights = self._weights(proven.core, region, None)
         taken = losses(
             segment,
             weights,

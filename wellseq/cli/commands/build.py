@@ -2,6 +2,8 @@
 
 The folder is written whole or not at all; an older one that wellseq made is replaced.  With --each
 every value of the sequence's `each` becomes a folder of its own, FOLDER-1, FOLDER-2 and so on.
+With --draft tables are written whatever was found, to FOLDER-draft, which says that it is a draft
+and which verify refuses.
 """
 
 from __future__ import annotations
@@ -18,19 +20,29 @@ from wellseq.cli.common import (
     print_report,
     status_of,
 )
-from wellseq.cli.members import TYPE_CHECKING
+from wellseq.cli.members import TYPE_CHECKING, names_in
 
 if TYPE_CHECKING:
     from wellseq.checks.case import Case
 
-EXAMPLE = "wellseq build evening.well -o evening-tables"
+EXAMPLE = "wellseq build evening.well -o evening-tables --also npz,hdf5"
 
 
 def add_arguments(parser: argparse.ArgumentParser) -> None:
-    """FILE, -o FOLDER, --each, --each-of, --let, --format, --margins."""
+    """FILE, -o FOLDER, --also, --draft, --each, --each-of, --let, --format, --margins."""
     parser.add_argument("file", metavar="FILE", help="a sequence, NAME.well")
     parser.add_argument(
         "-o", "--output", required=True, metavar="FOLDER", help="the folder to publish"
+    )
+    parser.add_argument(
+        "--also",
+        default=(),
+        type=_forms,
+        metavar="FORM,…",
+        help=f"further forms of every table: {', '.join(names_in('emit', 'also'))}",
+    )
+    parser.add_argument(
+        "--draft", action="store_true", help="write tables with findings, marked as a draft"
     )
     parser.add_argument(
         "--each", action="store_true", help="a folder per value of the sequence's `each`"
@@ -42,30 +54,51 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
     add_format(parser)
 
 
+def _forms(text: str) -> tuple[str, ...]:
+    known = names_in("emit", "also")
+    forms = tuple(sorted({form.strip() for form in text.split(",")}))
+    for form in forms:
+        if form not in known:
+            raise argparse.ArgumentTypeError(f"'{form}' is none of {', '.join(known)}")
+    return forms
+
+
 def run(arguments: argparse.Namespace) -> int:
     """Check, then publish; returns the exit status."""
     from wellseq.emit.examined import examined
     from wellseq.emit.publish import CannotPublish, Miswritten
-    from wellseq.pipeline import publish
 
     cases = _cases(arguments)
     things = [examined(case) for case in cases]
     print_report(things, arguments)
     code = status.worst(status_of(thing) for thing in things)
-    if code != status.CLEAR:
+    if code != status.CLEAR and not arguments.draft:
         complain("nothing was written")
         return code
     try:
         for folder, case in zip(_folders(arguments, len(cases)), cases, strict=True):
-            publish(case, folder)
-            _tell(folder, case)
+            _publish(folder, case, arguments)
     except CannotPublish as why:
         complain(str(why))
         return status.NO_OUTPUT
     except Miswritten as why:
         complain(f"this is a fault of wellseq itself: {why}; nothing was published")
         return status.OUR_FAULT
-    return status.CLEAR
+    return code
+
+
+def _publish(folder: str, case: Case, arguments: argparse.Namespace) -> None:
+    from wellseq.pipeline import publish, publish_draft
+
+    if not arguments.draft:
+        publish(case, folder, arguments.also)
+        _tell(folder, case, "read cautions.md first")
+        return
+    named = publish_draft(case, folder, arguments.also)
+    if named is None:
+        complain(f"{folder}: there are no tables to draft")
+    else:
+        _tell(str(named), case, "a DRAFT, not to be played")
 
 
 def _cases(arguments: argparse.Namespace) -> list[Case]:
@@ -101,9 +134,9 @@ def _folders(arguments: argparse.Namespace, count: int) -> list[str]:
     return [f"{folder}-{number + 1}" for number in range(count)]
 
 
-def _tell(folder: str, case: Case) -> None:
-    """One line on standard error: standard output belongs to the findings."""
+def _tell(folder: str, case: Case, last: str) -> None:
+    """Two lines on standard error: standard output belongs to the findings."""
     blocks = case.shipped.blocks if case.shipped is not None else ()
     rows = sum(len(block.ticks) for block in blocks)
     tables = f"{len(blocks)} table" + ("s" if len(blocks) != 1 else "")
-    sys.stderr.write(f"{folder}: written, {tables}, {rows} rows; read cautions.md first\n")
+    sys.stderr.write(f"{folder}: written, {tables}, {rows} rows; {last}\n")

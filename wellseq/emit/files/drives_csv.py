@@ -9,27 +9,32 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
-from wellseq.checks.judging import Cleared
 from wellseq.emit.blocks import drives_name
 from wellseq.emit.content import drive_cells
 from wellseq.emit.escape import csv_text
+from wellseq.emit.keys import Key
 from wellseq.timeline.timeline import Block, Drive
 
-_HEAD = ("ring", "start_s", "stop_s", "from_Hz", "to_Hz", "amplitude_V", "order")
+HEAD = ("ring", "start_s", "stop_s", "from_Hz", "to_Hz", "amplitude_V", "order")
 
 
-def write(cleared: Cleared) -> Iterator[tuple[str, list[bytes]]]:
+def write(key: Key) -> Iterator[tuple[str, list[bytes]]]:
     """(name, content) of the drive table of every block that drives a ring."""
-    shipped = cleared.case.shipped
+    shipped = key.case.shipped
     for one in shipped.blocks if shipped is not None else ():
         if one.block.drives:
             yield drives_name(one.block), [_table(one.block).encode("utf-8")]
 
 
+def head(width: int) -> list[str]:
+    """The names of so many columns: the drive's (s, Hz, V), then a phase per sector in degrees."""
+    phases = [f"phase_{sector + 1}_deg" for sector in range(width - len(HEAD))]
+    return [*HEAD, *phases]
+
+
 def _table(block: Block) -> str:
     sectors = max(len(drive.phases_deg) for drive in block.drives)
-    phases = [f"phase_{sector + 1}_deg" for sector in range(sectors)]
-    rows = [",".join((*_HEAD, *phases))]
+    rows = [",".join(head(len(HEAD) + sectors))]
     rows += [",".join(_row(drive, sectors)) for drive in block.drives]
     return "".join(f"{row}\r\n" for row in rows)
 

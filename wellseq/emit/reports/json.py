@@ -16,6 +16,7 @@ from pydantic import BaseModel, ConfigDict, Field
 from wellseq.base.finding import Finding
 from wellseq.base.place import Place
 from wellseq.emit.examined import Examined
+from wellseq.emit.fingerprints import fingerprints
 from wellseq.emit.formats import Options
 from wellseq.version import __version__
 
@@ -54,6 +55,8 @@ class ExaminedFile(_Part):
     duration_s: float | None = Field(description="time played, waits for triggers not counted")
     checks_run: list[str]
     checks_not_run: list[NotRun]
+    against: str = Field(description="known findings or revision compared with; empty if none")
+    set_aside: int = Field(ge=0, description="findings that stood there already, not listed")
 
 
 class FoundThing(_Part):
@@ -80,6 +83,8 @@ class FoundThing(_Part):
     margin: float | None
     uncertainty: float | None
     reason: str = Field(description="why it was allowed; empty unless the verdict is allowed")
+    known: str = Field(description="why it need not be looked at again; empty for what is new")
+    fingerprint: str = Field(description="survives edits elsewhere in the file")
 
 
 class FindingsReport(_Part):
@@ -99,7 +104,13 @@ def report(things: Sequence[Examined], options: Options) -> str:
         schema=SCHEMA,
         schema_version=SCHEMA_VERSION,
         files=[_file(thing) for thing in things],
-        findings=[_found(thing, finding) for thing in things for finding in thing.findings],
+        findings=[
+            _found(thing, finding, fingerprint)
+            for thing in things
+            for finding, fingerprint in zip(
+                thing.findings, fingerprints(thing, thing.findings), strict=True
+            )
+        ],
     )
     plain = document.model_dump(by_alias=True)
     return dumps(plain, indent=2, sort_keys=True, ensure_ascii=False, allow_nan=False) + "\n"
@@ -123,10 +134,12 @@ def _file(thing: Examined) -> ExaminedFile:
         duration_s=thing.duration_s,
         checks_run=list(thing.ran),
         checks_not_run=[NotRun(name=name, why=why) for name, why in thing.not_run],
+        against=_text(thing.against),
+        set_aside=thing.set_aside,
     )
 
 
-def _found(thing: Examined, finding: Finding) -> FoundThing:
+def _found(thing: Examined, finding: Finding, fingerprint: str) -> FoundThing:
     window = finding.window_s
     return FoundThing(
         of=_text(thing.shown),
@@ -148,6 +161,8 @@ def _found(thing: Examined, finding: Finding) -> FoundThing:
         margin=_known(finding.margin),
         uncertainty=_known(finding.uncertainty),
         reason=finding.reason,
+        known=finding.known,
+        fingerprint=fingerprint,
     )
 
 

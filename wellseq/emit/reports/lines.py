@@ -10,7 +10,7 @@ from collections.abc import Iterator, Sequence
 
 from wellseq.base.finding import Finding, Verdict
 from wellseq.base.names import printable
-from wellseq.emit.examined import Examined, nearest_of_each
+from wellseq.emit.examined import Examined, nearest_of_each, standing
 from wellseq.emit.excerpt import display_column, source_line
 from wellseq.emit.formats import Options
 
@@ -24,7 +24,7 @@ def report(things: Sequence[Examined], options: Options) -> str:
 
 def _lines(thing: Examined, options: Options) -> Iterator[str]:
     for finding in thing.having(Verdict.FAIL, Verdict.UNSURE, Verdict.ALLOWED):
-        yield _line(thing, finding, _SEVERITY[finding.verdict])
+        yield _line(thing, finding, "note" if finding.known else _SEVERITY[finding.verdict])
     if options.margins:
         for finding in nearest_of_each(thing.findings):
             yield _line(thing, finding, "note")
@@ -36,6 +36,8 @@ def _lines(thing: Examined, options: Options) -> Iterator[str]:
         yield f"{shown}:1:1: {severity}: not examined: {listed} [not-examined]"
     if thing.clear:
         yield f"{shown}:1:1: note: {len(thing.ran)} checks ran, nothing stands in the way [cleared]"
+    elif thing.against and thing.settled:
+        yield f"{shown}:1:1: note: {standing(thing)}; a build refuses it [nothing-new]"
 
 
 def _line(thing: Examined, finding: Finding, severity: str) -> str:
@@ -47,6 +49,8 @@ def _line(thing: Examined, finding: Finding, severity: str) -> str:
     message = f"{unsure}{passed}{_flat(finding.message)}"
     if finding.verdict is Verdict.ALLOWED:
         message += f" (allowed: {_flat(finding.reason)})"
+    if finding.known:
+        message += f" (known: {_flat(finding.known)})"
     where = f"{printable(place.file)}:{place.line}:{column}"
     return f"{where}: {severity}: {message} [{finding.name}]"
 

@@ -11,8 +11,8 @@ from textwrap import wrap
 from wellseq.base.finding import Finding, Verdict
 from wellseq.base.names import printable
 from wellseq.base.place import Place
-from wellseq.checks.numbers import amount
-from wellseq.emit.examined import Examined, nearest_of_each
+from wellseq.checks.numbers import amount, stretch
+from wellseq.emit.examined import Examined, nearest_of_each, standing
 from wellseq.emit.excerpt import marker, shown_line, source_line
 from wellseq.emit.formats import Options
 
@@ -24,6 +24,8 @@ _WORD = {
 }
 _COLOUR = {Verdict.FAIL: "31;1", Verdict.UNSURE: "35;1", Verdict.ALLOWED: "33", Verdict.PASS: "32"}
 _INDENT = " " * 10
+WIDE = 40
+"""Columns below which a long word is cut: it would not fit on any line."""
 
 
 def report(things: Sequence[Examined], options: Options) -> str:
@@ -46,6 +48,7 @@ def _paragraphs(thing: Examined, options: Options) -> Iterator[str]:
 
 def _finding(thing: Examined, finding: Finding, options: Options) -> Iterator[str]:
     word = _painted(_WORD[finding.verdict], _COLOUR[finding.verdict], options)
+    word += ", known" if finding.known else ""
     yield f"{word}  {_painted(finding.name, '1', options)}"
     yield from _row("", finding.message, options)
     written = source_line(thing.sources, finding.place)
@@ -56,8 +59,14 @@ def _finding(thing: Examined, finding: Finding, options: Options) -> Iterator[st
         yield from _row("called", f"from {_shown(call)}", options)
     if finding.window_s is not None:
         yield from _row("when", _when(finding), options)
+    if finding.strip:
+        room = max(10, options.width - len(_INDENT))
+        for number, line in enumerate(finding.strip):
+            yield f"{'' if number else 'signals':>8}  {printable(line)[:room]}".rstrip()
     if finding.reason:
         yield from _row("because", printable(finding.reason), options)
+    if finding.known:
+        yield from _row("known", printable(finding.known), options)
     if finding.hint:
         yield from _row("try", finding.hint, options)
 
@@ -66,7 +75,7 @@ def _excerpt(written: str, place: Place, options: Options) -> Iterator[str]:
     line = shown_line(written.rstrip())
     under = marker(written.rstrip(), place)
     cut = len(line) - len(line.lstrip(" "))
-    room = max(20, options.width - len(_INDENT))
+    room = max(10, options.width - len(_INDENT))
     start = len(under) - len(under.lstrip(" "))
     if start - cut > room - 12:
         cut = start - room // 3
@@ -90,11 +99,9 @@ def _shown(place: Place) -> str:
 
 
 def _when(finding: Finding) -> str:
-    start, end = finding.window_s or (0.0, 0.0)
+    start_s, end_s = finding.window_s or (0.0, 0.0)
     within = f" of block {printable(finding.block)}" if finding.block else ""
-    if start == end:
-        return f"{amount(start, 's')}{within}"
-    return f"{amount(start, 's')} to {amount(end, 's')}{within}"
+    return f"{stretch(start_s, end_s)}{within}"
 
 
 def _margins(thing: Examined, options: Options) -> Iterator[str]:
@@ -130,6 +137,10 @@ def _closing(thing: Examined, options: Options) -> Iterator[str]:
         if thing.having(verdict)
     ]
     verdict = "clear" if thing.clear else "not clear"
+    if thing.against and thing.settled and not thing.clear:
+        counts.append(f"{standing(thing)}; a build refuses it")
+    elif thing.set_aside:
+        counts.append(f"{thing.set_aside} there already in {printable(thing.against)}")
     if thing.cause:
         counts.append(f"{len(thing.not_run)} checks not run")
     said = ", ".join(counts) or "no findings"
@@ -139,8 +150,9 @@ def _closing(thing: Examined, options: Options) -> Iterator[str]:
 
 
 def _row(label: str, text: str, options: Options) -> Iterator[str]:
-    room = max(30, options.width - len(_INDENT))
-    lines = wrap(text, room, break_long_words=False, break_on_hyphens=False) or [""]
+    room = max(10, options.width - len(_INDENT))
+    long = options.width < WIDE
+    lines = wrap(text, room, break_long_words=long, break_on_hyphens=False) or [""]
     yield f"{label:>8}  {lines[0]}".rstrip()
     for line in lines[1:]:
         yield _INDENT + line

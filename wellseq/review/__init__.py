@@ -1,0 +1,1 @@
+"""Floor 11: what a reviewer needs: many files at once, earlier findings, comparisons, layout."""
