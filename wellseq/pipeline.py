@@ -1,8 +1,6 @@
 """The contents page: every stage from a text to a published folder, in order.
 
-    text → Tree → Sequence → Timeline → Shipped → Wells → Forecast → Findings → Cleared → folder
-
-Interlock rules are judged beside the forecast, on the same stages.
+    text → Tree → Sequence → Timeline → Shipped → Wells → Rulings → Findings → Cleared → folder
 
 Nothing is decided here but how far a file gets: a text with mistakes is not drawn, a drawing with
 mistakes is not searched for wells, since what follows from a mistake is no news.
@@ -19,12 +17,10 @@ from pathlib import Path
 from wellseq.base.finding import Finding, Mistake
 from wellseq.checks.case import Case
 from wellseq.checks.judging import check_names, clear, judge
-from wellseq.clouds.ledger import forecast
 from wellseq.emit.columns import Column, Kind, rows_as_read
 from wellseq.emit.content import content_id
 from wellseq.emit.expand import Poured, ticks_between
 from wellseq.emit.keys import Draft, drawn
-from wellseq.emit.pictures.notebook import show_themselves
 from wellseq.emit.publish import DRAFT_ENDING, write_folder
 from wellseq.fields.field import Field
 from wellseq.model import build as model
@@ -41,7 +37,6 @@ from wellseq.wells.trace import trace
 
 Name = str | PathLike[str]
 Each = tuple[str, int] | int | None
-show_themselves()
 
 
 class TrapMistakes(ValueError):
@@ -120,17 +115,15 @@ def _stages(path: Path, shown: str, lets: Mapping[str, str], each: Each) -> Case
 
 
 def _played(case: Case, sequence: Sequence) -> Case:
-    """The stages of a sound sequence: drawn, shipped, wells followed, foretold, rules judged."""
+    """The stages of a sound sequence: drawn, shipped, its clouds' wells followed, rules judged."""
     timeline = draw(sequence, lambda: _field(sequence.trap))
     shipped = ship(timeline)
-    solved = None if timeline.mistakes else _field(sequence.trap)
-    wells = None if solved is None else trace(timeline, shipped, solved)
+    wells = trace(timeline, shipped, _field(sequence.trap)) if not timeline.mistakes else None
     drawn = replace(case, mistakes=timeline.mistakes, timeline=timeline)
-    if wells is None or solved is None or case.rules is None:
+    if wells is None or case.rules is None:
         return replace(drawn, shipped=shipped)
     rulings = interlocks.examine(case.rules, timeline, shipped, wells)
-    foretold = forecast(timeline, shipped, wells, solved)
-    return replace(drawn, shipped=shipped, wells=wells, forecast=foretold, rulings=rulings)
+    return replace(drawn, shipped=shipped, wells=wells, rulings=rulings)
 
 
 _FIELDS: dict[str, Field] = {}

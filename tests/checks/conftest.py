@@ -16,7 +16,6 @@ from wellseq.base.finding import Finding, Mistake, Origin
 from wellseq.base.place import Place
 from wellseq.checks.case import Case
 from wellseq.checks.judging import check, judge
-from wellseq.clouds.forecast import Forecast, Measured
 from wellseq.model.rulebook import Rulebook
 from wellseq.model.sequence import Allowed, CloudDeclared
 from wellseq.model.sequence import Sequence as Played
@@ -50,7 +49,6 @@ from wellseq.wells.wells import Held, Losses, SideDepth, Wells
 US = Fraction(1, 10**6)
 NS = Fraction(1, 10**9)
 NO_WELLS = Wells((), (), (), (), 0.0)
-NO_FORECAST = Forecast()
 NO_RULES, NO_RULINGS = Rulebook(), Rulings()
 
 
@@ -187,7 +185,6 @@ class Maker:
         blocks: Sequence[Block] | None = None,
         *,
         wells: Wells | None = NO_WELLS,
-        forecast: Forecast | None = NO_FORECAST,
         rules: Rulebook | None = NO_RULES,
         rulings: Rulings | None = NO_RULINGS,
         shipped: Shipped | None = None,
@@ -211,7 +208,6 @@ class Maker:
             timeline=timeline,
             shipped=shipped or ship(timeline),
             wells=wells,
-            forecast=forecast,
             rules=rules,
             rulings=rulings,
         )
@@ -297,27 +293,6 @@ class Maker:
     def wells(self, *held: Held, **more: Any) -> Wells:
         """Everything known about wells."""
         return replace(NO_WELLS, held=held, **more)
-
-    def measured(
-        self,
-        check: str,
-        low: float,
-        high: float | None = None,
-        *,
-        limit: float = float("nan"),
-        unit: str = "",
-        cloud: str = "pool",
-        number: int = 0,
-    ) -> Measured:
-        """What the ledger measured of a cloud in a step of a microsecond, for a check."""
-        high = low if high is None else high
-        words = f"{cloud} is {{value}}, {{limit}} at the edge"
-        place = check, cloud, 0, number, 0.0, 1e-6
-        return Measured(*place, low, high, unit, words, limit, "mend it")
-
-    def foretold(self, *measured: Measured, **more: Any) -> Forecast:
-        """A forecast that holds these measurements."""
-        return Forecast(measured=measured, **more)
 
     def mistake(self, name: str, number: int = 0) -> Mistake:
         """A mistake of that name at step `number`."""

@@ -246,7 +246,10 @@ def test_explain(run: Run, name: str, says: str) -> None:
 def test_explain_offers_the_nearest_name(run: Run) -> None:
     ran = run("explain", "evaprate")
     assert ran.status == 64
-    assert ran.err == "wellseq: 'evaprate' is not known; did you mean 'evaporate'?\n"
+    assert ran.err == (
+        "wellseq: 'evaprate' is not known; did you mean 'evaporate'?; "
+        "the rules of a laboratory are known with --trap\n"
+    )
 
 
 def test_everything_that_verify_can_find_has_a_page(run: Run) -> None:

@@ -13,7 +13,6 @@ from wellseq.base.finding import Finding, Origin, Verdict
 from wellseq.base.place import Place
 from wellseq.checks.case import Case
 from wellseq.checks.judging import Cleared, check_names, clear
-from wellseq.clouds.forecast import Forecast
 from wellseq.model.effects import Assumed
 from wellseq.model.rulebook import Rulebook
 from wellseq.model.sequence import Allowed, Sequence, SourceFile
@@ -312,7 +311,6 @@ def case(**changes: object) -> Case:
         timeline=timeline,
         shipped=ship(timeline),
         wells=wells(),
-        forecast=Forecast(),
         rules=Rulebook(),
         rulings=Rulings(),
         findings=findings(),

@@ -39,7 +39,7 @@ def test_it_opens_by_saying_that_it_is_no_interlock() -> None:
     "words",
     [
         "**The trap file names no rules of the laboratory's own.**",
-        "**Only vacuum depths are proved.**",
+        "**No forecast of any cloud was made.**",
         "IEC 61140",
         "IEC 60204-1",
         "Health Physics 96, 504 (2009)",

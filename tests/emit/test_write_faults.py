@@ -1,4 +1,4 @@
-"""Every write, flush and rename fails in turn: the old folder stands, and the exit is 73."""
+"""Every write, flush and rename fails in turn: the old folder stands, and it ends with 73."""
 
 from __future__ import annotations
 

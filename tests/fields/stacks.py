@@ -26,7 +26,6 @@ class Stand:
     """A trap: what the fields need of one."""
 
     electrodes: tuple[Ring, ...]
-    plates_m: tuple[float | None, float | None] = (None, None)
 
 
 def stand(edges, radius_m=1.0):

@@ -105,11 +105,12 @@ def test_gapless_or_moved_by_a_thousandth_would_be_seen(wrong):
 
 @pytest.mark.parametrize("gap", [0.04, 0.2])
 def test_what_the_rule_leaves_out_is_estimated(gap):
-    # Normal field at the gaps of short electrodes: absent from one gap alone, see below.
-    said = gap_error(stack_of(stand(whole(gap)).electrodes))[1:4]
+    # 2e-5 is the noise of the elements themselves.  Without the leak term the gap of 0.2 a would be
+    # 1.4e-3 wrong and that of 0.1 a 3.3e-4.
+    said = gap_error(stack_of(stand(whole(gap)).electrodes)).sum(axis=1)[1:4]
     found = worst_of_stack(gap)
-    assert (found < said).all()
-    assert (found > 0.25 * said).all()
+    assert (found < said + 2e-5).all()
+    assert (found < 1e-4).all()
 
 
 def worst_of_one_gap(factor):

@@ -43,7 +43,7 @@ LIBRARIES = {
     "clouds": {"numpy", "scipy"},
     "rules": {"numpy"},
     "checks": {"numpy"},
-    "emit": {"numpy", "pydantic", "h5py", "matplotlib", "rich"},
+    "emit": {"numpy", "pydantic", "h5py"},
     "editor": {"pygls", "lsprotocol"},
 }
 LINES_MAX, FUNCTION_MAX, WIDTH_MAX = 400, 60, 100

@@ -156,7 +156,7 @@ PLANTS: list[tuple[Rule, str, str | None, str]] = [
     (rules.upward_imports, ABOVE, "x = import_module(f'wellseq.checks.{x}')\n", "floor 0"),
     (rules.upward_imports, ABOVE, "from ..text import scan\n", "relative"),
     (rules.upward_imports, ABOVE, "from wellseq.cellar import wine\n", "on no floor"),
-    (rules.upward_imports, "wellseq/emit/csv.py", "import wellseq.reread.bytes\n", "floor 8"),
+    (rules.upward_imports, "wellseq/emit/csv.py", "import wellseq.reread.bytes\n", "floor 9"),
     (rules.upward_imports, "wellseq/cellar/wine.py", "", "on no floor"),
     (rules.foreign_imports, ABOVE, "import numpy as np\n", "numpy"),
     (rules.foreign_imports, "wellseq/text/scan.py", "from pydantic import Field\n", "pydantic"),

@@ -1,7 +1,7 @@
 """The manual of rules: its examples are judged, its tables and limits are those of the code.
 
-A ```rules fence is a rules file of the page trap, whose lines get roles; a ```well fence after it is
-a piece of a sequence that these rules are judged on.  Lines that are refused bear `# expect: NAME`.
+A ```rules fence is a rules file of the page trap, whose lines get roles; a ```well fence after it
+is a piece of a sequence that they are judged on.  Lines that are refused bear `# expect: NAME`.
 """
 
 from __future__ import annotations

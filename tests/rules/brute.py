@@ -11,7 +11,9 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 from fractions import Fraction
 from functools import cached_property
-from itertools import product
+from itertools import pairwise, product
+
+from brute_stretches import closing, opening, stretches
 
 from wellseq.model import rulebook as book
 from wellseq.timeline.shipped import Shipped
@@ -218,7 +220,7 @@ def decided(
     # The ends, zero and the bounds within decide: between two of them nothing turns.
     inner = [0.0, *(sign * one for one in (first, last) if one is not None for sign in (1, -1))]
     values = sorted({low, high, *(value for value in inner if low <= value <= high)})
-    values += [(one + other) / 2 for one, other in zip(values, values[1:], strict=False)]
+    values += [(one + other) / 2 for one, other in pairwise(values)]
     found = {tests[relation](value) for value in values}
     return found.pop() if len(found) == 1 else None
 
@@ -336,26 +338,23 @@ def begun(
     surely, perhaps = (mask >> PAD for mask in read(event, atoms))
     count = len(run.places)
     found: list[tuple[int, int, bool]] = []
-    for first, last in _stretches(perhaps, count):
+    for first, last in stretches(perhaps, count):
         inner = [
             (max(one, first), min(other, last))
-            for one, other in _stretches(surely, count)
+            for one, other in stretches(surely, count)
             if one <= last and other >= first
         ]
-        gaps = [
-            (_close(one[1]), _open(other[0]), False)
-            for one, other in zip(inner, inner[1:], strict=False)
-        ]
+        gaps = [(closing(one[1]), opening(other[0]), False) for one, other in pairwise(inner)]
         stood, stays = first == 0, last == count - 1
         if not inner:
-            found.append((_open(first), _close(last), False))
+            found.append((opening(first), closing(last), False))
         elif ends:
             if not (stays and inner[-1][1] == last):
-                found.append((_close(inner[-1][1]), _close(last), not stays))
+                found.append((closing(inner[-1][1]), closing(last), not stays))
         elif stood and inner[0][0] == 0:
             found += [(0, 0, True)] if standing else []
         else:
-            found.append((_open(first), _open(inner[0][0]), not stood or standing))
+            found.append((opening(first), opening(inner[0][0]), not stood or standing))
         found += gaps
     return found
 
@@ -386,25 +385,3 @@ def _played(
                 last = zero + int(end_s / run.step_s * PER_STEP)
                 found[first, number] = last if ends else first
     return [(at, at, True) for at in found.values() if at < len(run.places)]
-
-
-def _stretches(mask: int, count: int) -> list[tuple[int, int]]:
-    """First and last sample of every run of ones."""
-    found: list[tuple[int, int]] = []
-    for at in range(count):
-        if mask >> at & 1:
-            if found and found[-1][1] == at - 1:
-                found[-1] = found[-1][0], at
-            else:
-                found.append((at, at))
-    return found
-
-
-def _open(sample: int) -> int:
-    """The instant at which a stretch begins whose first sample is this one."""
-    return sample - sample % 2
-
-
-def _close(sample: int) -> int:
-    """The instant at which a stretch ends whose last sample is this one."""
-    return sample + sample % 2

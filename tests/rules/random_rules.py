@@ -1,6 +1,6 @@
 """Random small timelines and random rules about them, all from one seed.
 
-Every time is a whole number of steps, so that the brute evaluator can look at all of them; a step is
+Every time is a whole number of steps: the brute evaluator can look at all of them.  A step is
 a fraction of a microsecond drawn at random.
 """
 

@@ -1,4 +1,4 @@
-"""Fifty thousand random rules on random timelines: the exact judgement against looking everywhere."""
+"""Fifty thousand random rules on random timelines: judged exactly, and by looking everywhere."""
 
 from __future__ import annotations
 

@@ -27,7 +27,9 @@ def test_before_for(gap: str, which: str) -> None:
 @pytest.mark.parametrize(("gap", "which"), GAP)
 def test_before_for_does_not_take_the_instant_itself(gap: str, which: str) -> None:
     # The valve closes at the very instant at which the ramp begins.
-    piece = f"hold for 5 ms; set valve open; hold for {gap}; set valve closed; {RAMP}; hold for 9 ms"
+    piece = (
+        f"hold for 5 ms; set valve open; hold for {gap}; set valve closed; {RAMP}; hold for 9 ms"
+    )
     found = outcome("before ramp, require valve open for 1 ms", piece)
     assert found == ("broken" if which == "short" else "kept")
 
@@ -42,14 +44,18 @@ def test_before_means_just_before() -> None:
 @pytest.mark.parametrize(("gap", "which"), GAP)
 def test_before_within(gap: str, which: str) -> None:
     # Open for 1 us only: from the set to one tick later, that instant not taken in.
-    piece = f"hold for 5 ms; set valve open; hold for 1 us; set valve closed; hold for {gap}; {RAMP}"
+    piece = (
+        f"hold for 5 ms; set valve open; hold for 1 us; set valve closed; hold for {gap}; {RAMP}"
+    )
     found = outcome("before ramp, require valve open within 1 ms", f"{piece}; hold for 5 ms")
     assert found == ("kept" if which == "short" else "broken")
 
 
 @pytest.mark.parametrize(("gap", "which"), GAP)
 def test_after_for(gap: str, which: str) -> None:
-    piece = f"set valve open; hold for 1 ms; {RAMP}; hold for {gap}; set valve closed; hold for 5 ms"
+    piece = (
+        f"set valve open; hold for 1 ms; {RAMP}; hold for {gap}; set valve closed; hold for 5 ms"
+    )
     found = outcome("after ramp, require valve open for 1 ms", piece)
     # Up to and with 1 ms after: a valve that closes exactly then is not open any more.
     assert found == ("kept" if which == "long" else "broken")
@@ -77,7 +83,9 @@ def test_within_takes_both_ends_in(gap: str, which: str) -> None:
     # `lamp on` begins `gap` after `valve closed` was true for the last time, which is before it.
     found = outcome("while lamp on, require valve closed within 1 ms", piece)
     assert found == "broken"
-    short = f"hold for 5 ms; set valve open; hold for {gap}; set lamp on; hold for 1 us; set lamp off"
+    short = (
+        f"hold for 5 ms; set valve open; hold for {gap}; set lamp on; hold for 1 us; set lamp off"
+    )
     found = outcome("while lamp on, require valve closed within 1 ms", f"{short}; hold for 5 ms")
     assert found == ("kept" if which == "short" else "broken")
 

@@ -1,4 +1,4 @@
-"""Sets of instants: the algebra against looking at every instant, and every end, open and closed."""
+"""Sets of instants: the algebra against looking at every instant; every end, open and closed."""
 
 from __future__ import annotations
 

@@ -2,16 +2,7 @@
 
 from __future__ import annotations
 
-import shutil
-from functools import cache
 from pathlib import Path
-
-import pytest
-
-from wellseq.base.finding import Finding, Verdict
-from wellseq.checks.case import Case
-from wellseq.pipeline import compile_file
-from wellseq.rules.rulings import Outcome
 
 HOME = Path(__file__).resolve().parents[2] / "sequences" / "saltmarsh"
 

@@ -8,7 +8,6 @@ from typing import TypeVar
 
 from wellseq.base.finding import Finding, Mistake, Origin
 from wellseq.base.place import Place
-from wellseq.clouds.forecast import Forecast
 from wellseq.model.rulebook import Rulebook
 from wellseq.model.sequence import Sequence, SourceFile
 from wellseq.model.trap import Trap
@@ -46,7 +45,6 @@ class Case:
     timeline: Timeline | None = None
     shipped: Shipped | None = None
     wells: Wells | None = None
-    forecast: Forecast | None = None
     rules: Rulebook | None = None
     rulings: Rulings | None = None
     findings: tuple[Finding, ...] = ()

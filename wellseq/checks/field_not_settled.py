@@ -1,4 +1,4 @@
-"""The error of the field solver, or of a cloud's equilibrium, is too large to decide by."""
+"""The error of the field solver is too large to decide by."""
 
 from __future__ import annotations
 
@@ -7,24 +7,21 @@ from collections.abc import Iterator
 from wellseq.base.finding import Limit, Mistake, Origin, Reading, at_most
 from wellseq.base.place import Place
 from wellseq.checks.case import Case, reached
-from wellseq.checks.foretold import readings
 from wellseq.checks.keeping import numbered, telling
 from wellseq.checks.written import mistakes_named
 
 SAYS = "The error of the computed field is too large for a depth to be decided."
-NEEDS = ("timeline", "wells", "forecast")
+NEEDS = ("timeline", "wells")
 WAIVABLE = False
 
 LIMIT = at_most(1e-3, "V")
 """House default: share of the field's error in one depth."""
 BASIS_LIMIT = at_most(1e-6, "V/V")
 """House default: error of one electrode's unit potential, V per volt applied."""
-DECREMENT_LIMIT = at_most(1e-6)
-"""Newton decrement of a cloud's equilibrium, dimensionless."""
 
 
 def read(case: Case) -> Iterator[Reading | Mistake]:
-    """The error of the unit potentials, V per V, its share in depths, V, and decrements."""
+    """The error of the unit potentials, V per V, and its share in every proved depth, V."""
     yield from mistakes_named(case, "field-not-settled")
     yield _of_basis(case, BASIS_LIMIT, reached(case.wells).basis_error_V_per_V)
     held = reached(case.wells).held
@@ -41,7 +38,6 @@ def read(case: Case) -> Iterator[Reading | Mistake]:
             block=case.block_name(one.block),
             window_s=(float(one.start_s), float(one.end_s)),
         )
-    yield from readings(case, "field-not-settled", DECREMENT_LIMIT)
 
 
 def _size(error: float) -> float:

@@ -25,17 +25,7 @@ from wellseq.checks.case import Case
 from wellseq.checks.numbers import amount
 
 _HOUSE = frozenset(
-    {
-        "breaches",
-        "case",
-        "foretold",
-        "judging",
-        "keeping",
-        "numbers",
-        "pieces",
-        "windows",
-        "written",
-    }
+    {"breaches", "case", "judging", "keeping", "numbers", "pieces", "windows", "written"}
 )
 _AFTER_ALLOWANCES = ("allowance-refused", "allowance-unused")
 
@@ -224,6 +214,5 @@ def clear(case: Case) -> Cleared | None:
 
 
 def _is_clear(case: Case) -> bool:
-    stages = (case.trap, case.sequence, case.timeline, case.shipped, case.wells)
-    last = (case.forecast, case.rulings)
-    return None not in (*stages, *last) and not case.blocked and case.ran == check_names()
+    stages = (case.trap, case.sequence, case.timeline, case.shipped, case.wells, case.rulings)
+    return None not in stages and not case.blocked and case.ran == check_names()

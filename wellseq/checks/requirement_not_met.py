@@ -4,9 +4,7 @@ Every claim is judged on an interval: only one that lies wholly inside what was 
 `depth` (V) is the least own depth over the last step that took time, or since the last label with
 `throughout`; `separation` (m) the distance of two wells at that place, or the least since the last
 label; `time` (s) what passes from the start of the labelled step, waits for triggers included from
-nothing to their longest; `temperature` (K), `number`, `radius` (m) and `density` (1/m3) are figures
-of the forecast at that place, or of all rows since the last label.  What was not measured is not
-known (NaN), and unsure.
+nothing to their longest.  What was not measured is not known (NaN), and unsure.
 """
 
 from __future__ import annotations
@@ -22,17 +20,15 @@ from wellseq.checks.keeping import worst
 from wellseq.checks.numbers import amount
 from wellseq.checks.windows import Moment, Story, Track, Window
 from wellseq.checks.written import mistakes_named
-from wellseq.clouds.forecast import Forecast
 from wellseq.model.effects import Claimed
 from wellseq.timeline.timeline import Timeline
 from wellseq.wells.wells import Held, SideDepth, Wells
 
 SAYS = "Something that the sequence requires is not surely so."
-NEEDS = ("timeline", "wells", "forecast")
+NEEDS = ("timeline", "wells")
 WAIVABLE = True
 
 UNITS = {"depth": "V", "separation": "m", "time": "s"}
-FORETOLD = {"temperature": "K", "number": "", "radius": "m", "density": "/m3"}
 Interval = tuple[float, float]
 NOT_KNOWN: Interval = (math.nan, math.nan)
 
@@ -40,8 +36,7 @@ NOT_KNOWN: Interval = (math.nan, math.nan)
 def read(case: Case) -> Iterator[Reading | Mistake]:
     """The interval of each claimed quantity against its bounds, V, m or s."""
     yield from mistakes_named(case, "requirement-not-met")
-    stages = reached(case.timeline), reached(case.wells), reached(case.forecast)
-    yield from worst(_claims(case, _Measured(*stages)))
+    yield from worst(_claims(case, _Measured(reached(case.timeline), reached(case.wells))))
 
 
 def _claims(case: Case, measured: _Measured) -> Iterator[Reading]:
@@ -50,24 +45,17 @@ def _claims(case: Case, measured: _Measured) -> Iterator[Reading]:
             claim = event.effect
             if not isinstance(claim, Claimed):
                 continue
-            unit = {**UNITS, **FORETOLD}.get(claim.quantity, "")
+            unit = UNITS.get(claim.quantity, "")
             bounds = (claim.lowest, at_least), (claim.highest, at_most)
             for limit in (side(bound, unit) for bound, side in bounds if bound is not None):
                 place = (block.index, event.start_s)
                 interval = measured.interval(claim, limit, event.number, place)
                 origin = case.origin(event.number)
-                cites = measured.cites(claim, event.number)
-                yield _reading(claim, limit, interval, origin, block.name, float(place[1]), cites)
+                yield _reading(claim, limit, interval, origin, block.name, float(place[1]))
 
 
 def _reading(
-    claim: Claimed,
-    limit: Limit,
-    interval: Interval,
-    origin: Origin,
-    block: str,
-    time_s: float,
-    cites: str,
+    claim: Claimed, limit: Limit, interval: Interval, origin: Origin, block: str, time_s: float
 ) -> Reading:
     low, high = interval
     what = _worded(claim)
@@ -82,7 +70,7 @@ def _reading(
         uncertainty=0.0 if math.isinf(high) else (high - low) / 2,
         between=interval,
         limit=limit,
-        message=f"{what} is {found}, required {side} {{limit}}" + (f"; {cites}" if cites else ""),
+        message=f"{what} is {found}, required {side} {{limit}}",
         origin=origin,
         subject=what,
         block=block,
@@ -104,7 +92,6 @@ class _Measured:
 
     timeline: Timeline
     wells: Wells
-    forecast: Forecast
 
     @cached_property
     def story(self) -> Story:
@@ -115,8 +102,6 @@ class _Measured:
         """Where the claimed quantity lies, in base units; NaN when it is not known."""
         if claim.quantity == "time":
             return self.story.time_since_s(claim.label, number, place)
-        if claim.quantity in FORETOLD:
-            return self._figure(claim, number, place)
         if claim.quantity not in UNITS or (claim.throughout and limit.side == "at most"):
             return NOT_KNOWN
         if claim.throughout:
@@ -139,30 +124,6 @@ class _Measured:
             and (end.block, end.start_s) < last
             for end in self.wells.unproved
         )
-
-    # the forecast
-
-    def _figure(self, claim: Claimed, number: int, place: Moment) -> Interval:
-        """A figure at a place; of all rows since the last label with `throughout`."""
-        here = self.forecast.at_place(claim.cloud, claim.quantity, number)
-        figures = [] if here is None else [here.figure]
-        if claim.throughout:
-            first, last = _rounded(self.story.since_label(number, place))
-            figures += [
-                row.figures[claim.quantity]
-                for row in self.forecast.rows
-                if row.cloud == claim.cloud
-                and claim.quantity in row.figures
-                and first < (row.block, row.end_s) <= last
-            ]
-        if not figures or not all(figure.known for figure in figures):
-            return NOT_KNOWN
-        return min(figure.low for figure in figures), max(figure.high for figure in figures)
-
-    def cites(self, claim: Claimed, number: int) -> str:
-        """Why a figure of the forecast is missing at a place, in words; empty when it is not."""
-        here = self.forecast.at_place(claim.cloud, claim.quantity, number)
-        return "" if here is None or here.figure.known else here.cites
 
     # depth
 

@@ -3,9 +3,6 @@
 What is judged is the interval from the certified depth (everything that can be wrong with the
 voltages taken off) to the least depth of the wish itself: only a certified depth passes, only a
 wish that is itself too shallow fails, anything between is unsure.  Volts per unit charge.
-
-With a forecast the depth that the space charge leaves is judged as well, in kT: it is no proof and
-its message says so.
 """
 
 from __future__ import annotations
@@ -15,14 +12,13 @@ from dataclasses import fields
 
 from wellseq.base.finding import Mistake, Reading, at_least
 from wellseq.checks.case import Case, reached
-from wellseq.checks.foretold import readings
 from wellseq.checks.keeping import numbered, telling
 from wellseq.checks.numbers import amount
 from wellseq.checks.written import mistakes_named
 from wellseq.wells.wells import Held, Losses, SideDepth
 
 SAYS = "The well that holds a cloud is not deep enough, or cannot be proved to be."
-NEEDS = ("timeline", "wells", "forecast")
+NEEDS = ("timeline", "wells")
 WAIVABLE = True
 
 _CAUSES = {
@@ -59,7 +55,6 @@ def read(case: Case) -> Iterator[Reading | Mistake]:
     )
     for index in kept:
         yield _reading(case, *sides[index])
-    yield from readings(case, "well-too-shallow", at_least(0.0, "kT"))
 
 
 def _reading(case: Case, held: Held, side: str, depth: SideDepth, floor_V: float) -> Reading:

@@ -86,8 +86,7 @@ def print_report(things: Sequence[Examined], arguments: argparse.Namespace) -> N
     """Write the findings in the form that was asked for to standard output."""
     from wellseq.emit.formats import Options, report
 
-    ledger = getattr(arguments, "forecast", False)
-    options = Options(colour_here(), arguments.margins, width_here(), ledger)
+    options = Options(colour_here(), arguments.margins, width_here())
     sys.stdout.write(report(arguments.format, things, options))
 
 

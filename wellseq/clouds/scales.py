@@ -100,7 +100,7 @@ def pressure_V_per_m2(
 def density_of_rotation_per_m3(
     *, rotation_rad_per_s: float, magnetic_field_T: float, mass_kg: float, charge_e: float = 1
 ) -> float:
-    """Density in 1/m³ of a cold plasma that rotates at w in rad/s: 2 ε0 m w (Ω_c − w)/q²."""
+    """Density, 1/m³, of a cold plasma, mass m (kg), turning at w (rad/s): 2 ε0 m w (Ω_c − w)/q²."""
     pressure = pressure_V_per_m2(
         rotation_rad_per_s=rotation_rad_per_s,
         magnetic_field_T=magnetic_field_T,

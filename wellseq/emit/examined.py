@@ -11,7 +11,6 @@ from dataclasses import dataclass, field
 from wellseq.base.finding import Finding, Verdict
 from wellseq.base.names import printable
 from wellseq.checks.case import Case
-from wellseq.emit.ledger import Entry, entries
 
 
 @dataclass(frozen=True, slots=True)
@@ -22,7 +21,6 @@ class Examined:
     timeline was reached; `sources` maps file names as shown to their text, for excerpts.
     `against` names what the findings were compared with (a file of known findings, a revision), if
     anything; `set_aside` counts findings that block, stood there already and are not listed.
-    `ledger` is what is foretold of the clouds.
     """
 
     shown: str
@@ -33,7 +31,6 @@ class Examined:
     sources: Mapping[str, str] = field(default_factory=dict)
     against: str = ""
     set_aside: int = 0
-    ledger: tuple[Entry, ...] = ()
 
     @property
     def cause(self) -> str:
@@ -103,5 +100,4 @@ def examined(case: Case) -> Examined:
         not_run=case.not_run,
         duration_s=float(case.timeline.duration_s) if case.timeline is not None else None,
         sources={file.shown: file.content.decode("utf-8-sig", "replace") for file in case.sources},
-        ledger=entries(case),
     )

@@ -15,15 +15,11 @@ from wellseq.emit.examined import Examined
 
 @dataclass(frozen=True, slots=True)
 class Options:
-    """How to report: ANSI colour or none, columns of the page; what is shown beside findings.
-
-    `margins`: what passes; `forecast`: the ledger of the clouds.
-    """
+    """How to report: ANSI colour or none, passing margins shown or not, columns of the page."""
 
     colour: bool = False
     margins: bool = False
     width: int = 100
-    forecast: bool = False
 
 
 def report(name: str, things: Sequence[Examined], options: Options | None = None) -> str:

@@ -9,7 +9,6 @@ from wellseq.checks.breaches import said
 from wellseq.checks.case import Case
 from wellseq.checks.numbers import amount
 from wellseq.emit.examined import nearest_of_each
-from wellseq.emit.foretold import foretold
 from wellseq.emit.page import (
     Bullets,
     Paragraph,
@@ -42,7 +41,6 @@ def guard_sections(case: Case) -> Iterator[Section | None]:
     yield section("not-examined", "What was not examined", *_not_examined(case))
     yield _allowances(case)
     yield _assumed(case)
-    yield foretold(case)
     yield _roundings(case)
     yield _margins(case)
 

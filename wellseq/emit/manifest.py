@@ -32,7 +32,7 @@ DRAFT_SCHEMA = "wellseq/draft"
 SCHEMA_VERSION = 2
 ROUNDINGS_KEPT = 32
 NOT_EXAMINED = (
-    "Only vacuum depths are proved; number, temperature and space charge of clouds are forecasts.",
+    "No forecast of any cloud was made: depths are vacuum depths, space charge is not taken off.",
 )
 
 

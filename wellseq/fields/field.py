@@ -6,9 +6,8 @@ voltages: a set of voltages is a vector in the order of the electrodes, and an e
 named is at 0 V, as is the tube beyond the stack.
 
 Shapes: phi (5, ne, nz).  Units: m, V, V/m^n per V, Hz.
-Accuracy: `error_V_per_V`, 1e-10 in one open tube, 1e-7 with steps, told by the solver itself;
-tests/fields/test_field.py, test_stepped.py.  What real gaps add is `gap_error`.
-Source: stepped.py (the solver), bore.py, certificate.py, minima.py.
+Accuracy: nodes 1e-12 V/V, between them `error_V_per_V` (below 1e-10); tests/fields/test_field.py.
+Source: uniform.py (the solver), certificate.py, minima.py.
 """
 
 from __future__ import annotations
@@ -23,29 +22,21 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from wellseq.base.names import nearest, normal
-from wellseq.fields import bore as bores
-from wellseq.fields import cache, stepped
+from wellseq.fields import cache, uniform
 from wellseq.fields.certificate import Region, certify
 from wellseq.fields.hermite import Curve, FloatArray, controls
 from wellseq.fields.minima import Well, wells
-from wellseq.fields.off_axis import potential_at
-from wellseq.fields.tube import SLOWEST_MODE
-from wellseq.fields.uniform import Electrode
 
 ORDERS = 5
 _CURVES_MAX = 16
 
 
 class TrapLike(Protocol):
-    """What a field needs of a trap: its electrodes and the plates at its ends."""
+    """What a field needs of a trap: its electrodes in order along the axis."""
 
     @property
-    def electrodes(self) -> Sequence[Electrode]:
+    def electrodes(self) -> Sequence[uniform.Electrode]:
         """Electrodes in order along the axis."""
-
-    @property
-    def plates_m(self) -> tuple[float | None, float | None]:
-        """Where a grounded plate closes the bore on the left and right, m; None: open tube."""
 
 
 class SpeciesLike(Protocol):
@@ -85,67 +76,46 @@ class LeastDepth:
 class Field:
     """The field of a trap's electrodes.
 
-    `electrodes` names in order, `radius_m` of the narrowest part of the bore, `z_m` (nz,) nodes
-    from plate to plate or 8 radii beyond the stack, `phi` (5, ne, nz) derivatives 0 … 4 on the axis
-    per V, `error_V_per_V` the greatest error of order 0, `gap_error_V_per_V` (ne,) what the rules
-    for gaps leave out, an estimate.  `memory` is for floors above: what they found out in this
-    field, by everything that it depends on.
+    `electrodes` names in order, `radius_m` of the bore, `z_m` (nz,) nodes 8 radii beyond the stack,
+    `phi` (5, ne, nz) derivatives 0 … 4 on the axis per V, `error_V_per_V` between nodes,
+    `gap_error_V_per_V` (ne,) what the rules for gaps leave out, an estimate.  `memory` is for
+    floors above: what they found out in this field, by everything that it depends on.
     """
 
     def __init__(self, trap: TrapLike) -> None:
         """Solve the trap's stack or find it on the disk.
 
-        Raises ValueError for a stack that is none or is too long for its bore.
+        Raises ValueError for a stack that is not a uniform bore or is too long for its bore.
         """
         parts = tuple(trap.electrodes)
-        self._bore = bores.bore_of(parts, trap.plates_m)
-        self._axis = bores.axis_of(self._bore)
+        stack = uniform.stack_of(parts)
+        axis = uniform.axis_of(stack)
         self.electrodes = tuple(part.name for part in parts)
-        self.radius_m = self._bore.least_radius_m
-        self.z_m = self._axis.z_m
-        self.step_m = self._axis.step_m
+        self.radius_m = stack.radius_m
+        self.z_m = axis.z_m
+        self.step_m = axis.step_m
+        self.error_V_per_V = uniform.interpolation_error(stack, axis)
+        self.gap_error_V_per_V = uniform.gap_error(stack).sum(axis=1)
+        self._stack, self._axis = stack, axis
         self._spans = [(float(part.from_m), float(part.to_m)) for part in parts]
         self._index = {normal(name): i for i, name in enumerate(self.electrodes)}
         self._curves: OrderedDict[bytes, Curve] = OrderedDict()
         self._sizes: dict[int, FloatArray] = {}
         self._drifts: dict[tuple[bytes, int], FloatArray] = {}
-        self._gap_errors: dict[Region, FloatArray] = {}
-        self._matching: stepped.Matching | None = None
         self.memory: dict[str, dict[bytes, Any]] = {}
-        shape = (ORDERS, len(parts) + 1, self._axis.count)
-        solved = cache.remembered(self._key(), shape, self._solve)
-        self.phi = np.ascontiguousarray(solved[:, :-1])
+        shape = (ORDERS, len(parts), axis.count)
+        self.phi = cache.remembered(self._key(), shape, self._solve)
         self.phi.flags.writeable = False
-        self._errors = [self._error_between(solved[:, -1], order) for order in range(3)]
-        self.error_V_per_V = float(self._errors[0].max())
-        gaps = bores.gaps_left(self._bore)
-        self._gap_table = gaps.on_axis(self.z_m)
-        self.gap_error_V_per_V = self._gap_table.max(axis=1)
 
     def _key(self) -> str:
-        numbers = [x for z_m in self._bore.plates_m for x in ([] if z_m is None else [z_m])]
-        for section in self._bore.sections:
-            numbers += [section.radius_m, *section.centre_m, *section.width_m]
-        plates = ["open" if z_m is None else "plate" for z_m in self._bore.plates_m]
-        faces = [float(step.face) for step in self._bore.steps]
+        numbers = [*self._stack.centre_m, *self._stack.width_m, self.radius_m]
         grid = [self._axis.start_m, self._axis.step_m, float(self._axis.count)]
-        words = [stepped.METHOD, np.__version__, *plates]
-        return cache.key_of([*words, *(float(number) for number in [*numbers, *faces, *grid])])
+        words = [uniform.METHOD, np.__version__]
+        return cache.key_of([*words, *(float(number) for number in [*numbers, *grid])])
 
     def _solve(self) -> FloatArray:
-        """Derivatives 0 … 4 (5, ne + 1, nz); the last row is the error told of each."""
-        table, error = stepped.settled(self._bore, self._axis, range(ORDERS))
-        return np.concatenate((table, error[:, None, :]), axis=1)
-
-    def _error_between(self, told: FloatArray, order: int) -> FloatArray:
-        """Error (nz − 1,) of a derivative on every interval, from those of the nodes (5, nz).
-
-        The controls of a quintic weigh value, slope and bend by 1, 2h/5 and h²/20 at most.
-        """
-        h = self.step_m
-        node = told[order] + 2 * h / 5 * told[order + 1] + h * h / 20 * told[order + 2]
-        between = bores.interpolation_error(self._bore, self._axis, order)
-        return np.asarray(between + np.maximum(node[:-1], node[1:]))
+        table = uniform.unit_potentials(self._stack, self._axis, orders=range(ORDERS))
+        return np.asarray(table[0])
 
     def vector(self, voltages: Mapping[str, float]) -> FloatArray:
         """Voltages by name (V) → (ne,) in the order of the electrodes; not named is 0 V.
@@ -183,10 +153,8 @@ class Field:
                 self._curves.popitem(last=False)
         return found
 
-    def _spacing(self) -> tuple[float, float, tuple[float, float]]:
-        ends = self._bore.sections[0].radius_m, self._bore.sections[-1].radius_m
-        decay_per_m = SLOWEST_MODE / ends[0], SLOWEST_MODE / ends[1]
-        return self._axis.start_m, self.step_m, decay_per_m
+    def _spacing(self) -> tuple[float, float, float]:
+        return self._axis.start_m, self.step_m, uniform.SLOWEST_MODE / self.radius_m
 
     def at(self, vector: FloatArray, z_m: ArrayLike, order: int = 0) -> FloatArray:
         """Derivative 0, 1 or 2 of φ (V/m^order, shape of z) at z in m for voltages (ne,) V."""
@@ -210,20 +178,9 @@ class Field:
             self._drifts[key] = deviation @ self.control_size(order)
         return self._drifts[key]
 
-    def error(self, order: int) -> FloatArray:
-        """Error (nz − 1,) of the derivative 0, 1 or 2 on every interval, V/m^order per V."""
-        return self._errors[order]
-
-    def gap_error(self, region: Region) -> FloatArray:
-        """What the rules for gaps leave out over a region, at most: (ne,), V per V, an estimate."""
-        if region not in self._gap_errors:
-            first, last = region
-            self._gap_errors[region] = self._gap_table[:, first : last + 1].max(axis=1)
-        return self._gap_errors[region]
-
-    def radius_at(self, z_m: ArrayLike) -> FloatArray:
-        """The bore's radius, m, at places along the axis (m, shape kept)."""
-        return self._bore.radius_at(z_m)
+    def error(self, order: int) -> float:
+        """Greatest error between nodes of the derivative of order 0, 1 or 2, V/m^order per V."""
+        return uniform.interpolation_error(self._stack, self._axis, order)
 
     def nodes_within(self, region_m: tuple[float, float]) -> Region:
         """The inclusive node indices inside a span (m).
@@ -249,21 +206,16 @@ class Field:
     ) -> FloatArray:
         """Potential in V (shape of z) at z and radius r in m; electrodes not named are at 0 V.
 
-        Raises ValueError for an unknown electrode, a radius beyond 0.9 of the bore's at one
-        of the places, or a place that is none or beyond an end plate.
+        Raises ValueError for an unknown electrode, a radius beyond 0.9 of the bore's, or no place.
         """
         vector = self.vector(voltages)
-        place = np.asarray(z_m, dtype=float)
-        if np.isnan(place).any():
+        if np.isnan(z_m).any():
             raise ValueError("a place along the axis is not a number")
-        for plate_m, side in zip(self._bore.plates_m, (-1, 1), strict=True):
-            if plate_m is not None and (side * (place - plate_m) > 0).any():
-                raise ValueError(f"a place lies beyond the end plate at {plate_m:g} m")
         if r_m == 0.0:
-            return self.curve(vector).exact(place)
-        if self._matching is None:
-            self._matching = stepped.Matching(self._bore, stepped.LEVELS[0])
-        return potential_at(self._matching, vector, place.ravel(), r_m).reshape(place.shape)
+            return self.curve(vector).exact(z_m)
+        nodes, axis = uniform.potential_nodes(self._stack, vector, r_m)
+        decay_per_m = uniform.SLOWEST_MODE / self.radius_m
+        return Curve(nodes, axis.start_m, axis.step_m, decay_per_m).exact(z_m)
 
     def wells(
         self,

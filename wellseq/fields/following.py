@@ -228,7 +228,7 @@ class _Piece:
 
     def _sway(self, first: int, last: int) -> float:
         """How much deviations and the interpolation can tilt U between nodes first … last (V)."""
-        error_V = 2 * self.field.error_V_per_V * self.volts
+        error_V = 2 * self.field.error(0) * self.volts
         if not self.deviation.any():
             return error_V
         low, high = extent(self.field, (first, last))

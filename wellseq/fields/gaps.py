@@ -76,8 +76,9 @@ def gap_left(wall: Wall, source_m: FloatArray, source_rise: FloatArray) -> Float
     nearest = np.where(offset < 1e-9, np.inf, offset).min(axis=1, initial=np.inf)
     share = LEAK_NEAR * (gap / np.maximum(nearest, 1e-9)) ** 2 + LEAK_CURVED * gap
     leaked = STEP_SLOPE * LEAK_AREA * gap**2 * share
-    own = OWN_SHARE * gap**3 * np.abs(wall.rise)
-    return np.asarray(own + leaked * (np.abs(source_rise) @ slope.T))
+    return np.asarray(
+        OWN_SHARE * gap**3 * np.abs(wall.rise) + leaked * (np.abs(source_rise) @ slope.T)
+    )
 
 
 def reach_of(distance_m: FloatArray, radius_m: float) -> FloatArray:

@@ -73,22 +73,16 @@ class Curve:
     """One function along the axis, known by its derivatives of orders 0 … 4 at equal steps.
 
     `nodes` (5, nz); beyond the ends the function decays as exp(−`decay_per_m` · distance), which is
-    the slowest mode of a grounded tube; two values where left and right differ.  Lengths in m;
-    values in the unit of the function.
+    the slowest mode of a grounded tube.  Lengths in m; values in the unit of the function.
     """
 
     def __init__(
-        self,
-        nodes: FloatArray,
-        start_m: float,
-        step_m: float,
-        decay_per_m: float | tuple[float, float],
+        self, nodes: FloatArray, start_m: float, step_m: float, decay_per_m: float
     ) -> None:
         self.nodes = nodes
         self.start_m = start_m
         self.step_m = step_m
-        pair = decay_per_m if isinstance(decay_per_m, tuple) else (decay_per_m, decay_per_m)
-        self.decay_per_m = pair
+        self.decay_per_m = decay_per_m
         self._controls: dict[int, FloatArray] = {}
         self.turns: tuple[FloatArray, FloatArray, FloatArray] | None = None
         self._bounds: dict[int, tuple[FloatArray, FloatArray]] = {}
@@ -127,8 +121,7 @@ class Curve:
         degree = control.shape[0] - 1
         weight = bernstein((inside - interval).ravel(), degree)
         value = np.einsum("jk,jk->k", weight, control[:, interval.ravel()]).reshape(z_m.shape)
-        beyond = place - inside
+        beyond = np.abs(place - inside)
         if beyond.any():
-            decay_per_m = np.where(beyond < 0, *self.decay_per_m)
-            value = value * np.exp(-decay_per_m * self.step_m * np.abs(beyond))
+            value = value * np.exp(-self.decay_per_m * self.step_m * beyond)
         return np.asarray(value)

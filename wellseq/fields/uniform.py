@@ -31,7 +31,7 @@ STEPS_PER_RADIUS = 22
 NODES_MAX = 40_000
 STEP_SUPREMA = (189.9, 1461.4, 9657.0)
 """sup over z of the 6th, 7th and 8th derivative of the unit step on the axis, in a^−n (tested)."""
-ROUNDING = 1e-13
+_ROUNDING = 1e-13
 
 
 class Electrode(Protocol):
@@ -122,7 +122,7 @@ def interpolation_error(stack: Stack, axis: Axis, order: int = 0) -> float:
     Two edges at most, each h⁶/46080 · sup|S⁽⁶⁺ᵒʳᵈᵉʳ⁾|, S the unit step; a gap only smooths S.
     """
     step = axis.step_m / stack.radius_m
-    bound = 2.0 * STEP_SUPREMA[order] * QUINTIC_ERROR * step**6 + ROUNDING * 30.0**order
+    bound = 2.0 * STEP_SUPREMA[order] * QUINTIC_ERROR * step**6 + _ROUNDING * 30.0**order
     return float(bound / stack.radius_m**order)
 
 

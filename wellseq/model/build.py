@@ -155,9 +155,7 @@ class _Build:
         for mistake in mistakes:
             # What cannot be opened has no place of its own: the mistake is where it is named.
             unreadable = mistake.name == "unreadable-file"
-            self.reporter.add(
-                replace(mistake, place=header.trap.place) if unreadable else mistake
-            )
+            self.reporter.add(replace(mistake, place=header.trap.place) if unreadable else mistake)
         if trap is None:
             return None, None
         self.sources.append(SourceFile(trap.file, trap.source.encode("utf-8")))

@@ -21,17 +21,11 @@ class Placed:
 
 @dataclass(frozen=True, slots=True)
 class Caught:
-    """From the end of the step on, the cloud is held between two gates.
-
-    Half of the near gate's edge is over `closing_s` (s) after the trigger; `at_V` is what it goes
-    to.
-    """
+    """From the end of the step on, the cloud is held between two gates."""
 
     cloud: str
     near: str
     far: str
-    at_V: float = 0.0
-    closing_s: float = 0.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -53,44 +47,11 @@ class Kicked:
 
 @dataclass(frozen=True, slots=True)
 class Evaporated:
-    """During the step the own vacuum depth of the cloud's well falls to `to_V`, volts.
-
-    Straight in time, or by equal ratios when `exponentially`.
-    """
+    """During the step the own vacuum depth of the cloud's well falls to `to_V`, volts."""
 
     cloud: str
     through: tuple[str, ...]
     to_V: float
-    exponentially: bool = False
-
-
-@dataclass(frozen=True, slots=True)
-class Cooled:
-    """During the step the cloud loses heat: by radiation, or to `coolant` where one is named.
-
-    `until_K` is the temperature claimed for its end, K; None where nothing is claimed.
-    """
-
-    cloud: str
-    coolant: str = ""
-    until_K: float | None = None
-
-
-@dataclass(frozen=True, slots=True)
-class Rotated:
-    """During the step a drive turns a cloud and whatever shares its well.
-
-    Frequencies in Hz, amplitude in V zero to peak, `order` 1 dipole or 2 quadrupole; `backwards`:
-    against the sense in which the cloud rotates.
-    """
-
-    cloud: str
-    ring: str
-    from_Hz: float
-    to_Hz: float
-    amplitude_V: float
-    order: int = 1
-    backwards: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -124,7 +85,7 @@ class Assumed:
 class Claimed:
     """The author's own claim, to be judged at this place.
 
-    Bounds are in base units (V, m, s, K, 1/m3), None where open.  `other` is the second cloud of a
+    Bounds are in base units (V, m, s), None where open.  `other` is the second cloud of a
     separation, `label` the step label of a time.
     """
 
@@ -137,16 +98,4 @@ class Claimed:
     throughout: bool = False
 
 
-Effect = (
-    Placed
-    | Caught
-    | Released
-    | Kicked
-    | Evaporated
-    | Cooled
-    | Rotated
-    | Nested
-    | Acted
-    | Assumed
-    | Claimed
-)
+Effect = Placed | Caught | Released | Kicked | Evaporated | Nested | Acted | Assumed | Claimed

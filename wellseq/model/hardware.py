@@ -85,8 +85,6 @@ class Electrode(Stretch):
     """A ring of the stack, inner radius `radius_m`.
 
     `output` drives the whole ring; the drive of a ring with several `sectors` adds to it.
-    `drive_least_V` (V) has been seen to hold a plasma at every rotation up to `drive_highest_Hz`
-    (Hz); None where nobody has measured it.
     """
 
     name: Name
@@ -99,12 +97,6 @@ class Electrode(Stretch):
         sound(lambda count: count in SECTORS, "a ring has 1, 4, 6 or 8 sectors"),
     ] = 1
     output: Mention
-    drive_least_V: Annotated[float, real("V", bounds("V", above="0", most="1000"))] | None = Field(
-        None, alias="drive_least"
-    )
-    drive_highest_Hz: Annotated[float, real("Hz", bounds("Hz", above="0", most="1e12"))] | None = (
-        Field(None, alias="drive_highest")
-    )
 
 
 class Converter(Part):
@@ -253,15 +245,13 @@ class Trigger(Part):
     """An event that a block can begin at.
 
     `within_s` is the longest wait for it, None when each step says its own.  The first row comes
-    `latency_s` after it, give or take `jitter_s`; a bunch that it announces passes the middle of
-    the near gate `arrival_s` after it.
+    `latency_s` after it, give or take `jitter_s`.
     """
 
     name: Name
     within_s: Wait | None = Field(None, alias="within")
     latency_s: Seconds = Field(Fraction(0), alias="latency")
     jitter_s: Seconds = Field(Fraction(0), alias="jitter")
-    arrival_s: Seconds = Field(Fraction(0), alias="arrival")
 
 
 class Rest(Part):

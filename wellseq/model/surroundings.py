@@ -18,9 +18,7 @@ from wellseq.model.written import choice, fault, listing, real, sound, text
 Tesla = Annotated[float, real("T", bounds("T", least="-100", most="100", nonzero=True))]
 Point = Annotated[tuple[Metres, Tesla], listing(2, 2, '["0 mm", "1.6 T"]')]
 RULES_FILES_MAX = 16
-ENDS = ("open", "closed", "left closed", "right closed")
-"""Left is the end of the lower z.  At an open end a grounded tube goes on, a closed one has a
-grounded plate."""
+LATER_ENDS = {"closed": 'closed ends are not understood yet: only ends = "open"'}
 
 
 def _in_order(points: tuple[tuple[float, float], ...]) -> bool:
@@ -77,8 +75,7 @@ class MagneticField(Part):
 class Bore(Part):
     """The surfaces that a cloud sees.
 
-    `patch_V`: contact potentials, at most.  `ends`: whether a grounded tube goes on for ever, or up
-    to a grounded plate at `left_plate_m`, `right_plate_m`; None: at the stack's own end.
+    `patch_V`: contact potentials, at most.  `ends`: a grounded tube goes on at both ends.
     `noise_heating_K_per_s` and `expansion_time_s`: measured, if known.
     """
 
@@ -88,31 +85,13 @@ class Bore(Part):
     patch_V: Annotated[float, real("V", bounds("V", least="0", most="1000"))] | None = Field(
         None, alias="patch"
     )
-    ends: Annotated[Literal["open", "closed", "left closed", "right closed"], choice(*ENDS)] = (
-        "open"
-    )
-    left_plate_m: Metres | None = Field(None, alias="left_plate")
-    right_plate_m: Metres | None = Field(None, alias="right_plate")
+    ends: Annotated[Literal["open"], choice("open", refused=LATER_ENDS)] = "open"
     noise_heating_K_per_s: (
         Annotated[float, real("K/s", bounds("K/s", least="0", most="1e9"))] | None
     ) = Field(None, alias="noise_heating")
     expansion_time_s: Annotated[float, real("s", bounds("s", above="0", most="1e9"))] | None = (
         Field(None, alias="expansion_time")
     )
-
-    @property
-    def closed(self) -> tuple[bool, bool]:
-        """Whether a plate closes the left and the right end."""
-        return self.ends in ("closed", "left closed"), self.ends in ("closed", "right closed")
-
-    @model_validator(mode="after")
-    def _has_ends_for_its_plates(self) -> Bore:
-        plates = (self.left_plate_m, self.right_plate_m)
-        for side, closed, plate_m in zip(("left", "right"), self.closed, plates, strict=True):
-            if plate_m is not None and not closed:
-                message = f"it has a plate on the {side}, where its end is open"
-                raise fault("trap-not-sound", message, f'write ends = "closed" or "{side} closed"')
-        return self
 
 
 class Site(Part):

@@ -17,8 +17,7 @@ from wellseq.base.names import nearest, normal
 from wellseq.model.hardware import Converter, Electrode, Line, Part, Rest, Switch, Trigger
 from wellseq.model.margins import Margins, PairMargin
 from wellseq.model.surroundings import Bore, MagneticField, Site
-from wellseq.model.trap_faults import Entry
-from wellseq.model.trap_sound import faults_of
+from wellseq.model.trap_sound import Entry, faults_of
 from wellseq.model.written import text
 
 __all__ = [
@@ -69,7 +68,7 @@ class Trap(Part):
             for number, part in enumerate(parts)
         ]
         pairs = tuple(enumerate(self.margins.pairs))
-        for fault in faults_of(entries, pairs, self.rests, self.bore, self.field):
+        for fault in faults_of(entries, pairs, self.rests):
             raise ValueError(f"{fault.message} ({fault.name})")
         return self
 
@@ -83,18 +82,8 @@ class Trap(Part):
 
     @property
     def radius_m(self) -> float:
-        """The least inner radius of the bore, m."""
-        return min(item.radius_m for item in self.electrodes)
-
-    @property
-    def plates_m(self) -> tuple[float | None, float | None]:
-        """Where grounded plates close the bore on the left and right, m; None: the tube goes on."""
-        left, right = self.bore.closed
-        first, last = self.bore.left_plate_m, self.bore.right_plate_m
-        return (
-            (self.electrodes[0].from_m if first is None else first) if left else None,
-            (self.electrodes[-1].to_m if last is None else last) if right else None,
-        )
+        """The inner radius of the bore, m, the same for every electrode."""
+        return self.electrodes[0].radius_m
 
     @cached_property
     def names(self) -> frozenset[str]:

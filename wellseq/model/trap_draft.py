@@ -17,8 +17,7 @@ from wellseq.base.names import nearest, printable
 from wellseq.base.place import Place
 from wellseq.model.hardware import Part
 from wellseq.model.toml_places import Path, Places
-from wellseq.model.trap_faults import Fault
-from wellseq.model.trap_sound import STRAYS_MAX, meant_by
+from wellseq.model.trap_sound import STRAYS_MAX, Fault, meant_by
 from wellseq.model.written import FAULT, WRITTEN, shown
 from wellseq.text.mistakes import LISTED_MAX
 

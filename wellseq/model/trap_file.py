@@ -34,8 +34,7 @@ from wellseq.model.toml_places import Path
 from wellseq.model.toml_text import parse
 from wellseq.model.trap import Trap
 from wellseq.model.trap_draft import TABLES_MAX, Draft, P, Table, called, keys_of
-from wellseq.model.trap_faults import Entry
-from wellseq.model.trap_sound import STRAYS_MAX, Numbered, faults_of, meant_by
+from wellseq.model.trap_sound import STRAYS_MAX, Entry, Numbered, faults_of, meant_by
 from wellseq.model.written import WRITTEN, is_name, shown, sound, text, whole
 
 VERSION = 1
@@ -89,16 +88,14 @@ def _fields(draft: Draft, raw: Table) -> dict[str, Any]:
     entries = [entry for section in LISTS for entry in _entries(draft, section, raw)]
     pairs, margins = _margins(draft, raw)
     rests = tuple(_rests(draft, raw))
-    field = _single(draft, "field", MagneticField, raw) if "field" in raw else None
-    bore = _single(draft, "bore", Bore, raw)
-    draft.faults.extend(faults_of(entries, pairs, rests, bore, field))
+    draft.faults.extend(faults_of(entries, pairs, rests))
     parts = [entry.part for entry in entries]
     if "field" not in raw:
         draft.add(("field",), "syntax", "the trap has no field", "write [field]")
     return {
         "name": heading.name if heading else "",
-        "field": field,
-        "bore": bore,
+        "field": _single(draft, "field", MagneticField, raw) if "field" in raw else None,
+        "bore": _single(draft, "bore", Bore, raw),
         "site": _single(draft, "site", Site, raw),
         "electrodes": tuple(part for part in parts if isinstance(part, Electrode)),
         "outputs": tuple(part for part in parts if isinstance(part, Converter | Switch)),

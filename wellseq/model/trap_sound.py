@@ -6,20 +6,81 @@ piece that could not be read has no part, and whatever would need it is not judg
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator, Sequence
+import math
+from collections.abc import Generator, Iterable, Iterator, Sequence
+from dataclasses import dataclass
 
 from wellseq.base.names import nearest
-from wellseq.model.hardware import Converter, Electrode, Line, Rest, Switch
+from wellseq.model.hardware import Converter, Electrode, Line, Part, Rest, Stretch, Switch, Trigger
 from wellseq.model.margins import PairMargin
-from wellseq.model.surroundings import Bore, MagneticField
 from wellseq.model.toml_places import Path
-from wellseq.model.trap_faults import SECTIONS, Entry, Fault, said
-from wellseq.model.trap_stack import stack_faults
 from wellseq.model.written import is_name
 from wellseq.text.mistakes import quoted
 
+SECTIONS = {
+    Electrode: "electrode",
+    Converter: "output",
+    Switch: "output",
+    Line: "line",
+    Trigger: "trigger",
+}
+"""Model → the key of the list of tables in which a trap file has it."""
 STRAYS_MAX = 20
 """Words that name nothing for which a meaning is looked for before other faults are held back."""
+GAP_RADII_MAX = 2
+"""A gap as wide as the bore is no gap but a forgotten electrode."""
+DUST = 1e-9
+"""Relative rounding of a difference of two lengths; a limit met exactly is met."""
+
+
+@dataclass(frozen=True, slots=True)
+class Fault:
+    """Something wrong, at a path of the file.
+
+    `see` is the path of what it clashes with.  `word` and `known` are a word that names nothing and
+    what it could have named; `what` says what those are.
+    """
+
+    path: Path
+    name: str
+    message: str
+    hint: str = ""
+    see: Path | None = None
+    word: str = ""
+    known: tuple[str, ...] = ()
+    what: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Entry:
+    """One table of the file: which model it is for, its number, its name, the part if readable.
+
+    An electrode of which only the ends could be read has a `Stretch` for its part.
+    `mentions` are the output names that it uses, each with the rest of its path; None when they
+    could not be read.
+    """
+
+    model: type[Part]
+    number: int
+    name: str | None
+    part: Part | None
+    mentions: tuple[tuple[Path, str], ...] | None = ()
+
+    @property
+    def path(self) -> Path:
+        """Where its table stands."""
+        return (SECTIONS[self.model], self.number)
+
+    @staticmethod
+    def of(number: int, part: Electrode | Converter | Switch | Line | Trigger) -> Entry:
+        """The entry of a part that has been read."""
+        mentions: tuple[tuple[Path, str], ...] = ()
+        if isinstance(part, Electrode):
+            mentions = ((("output",), part.output),)
+        elif isinstance(part, Switch):
+            named = enumerate(part.levels)
+            mentions = tuple((("levels", n), item) for n, item in named if isinstance(item, str))
+        return Entry(type(part), number, part.name, part, mentions)
 
 
 def meant_by(word: str, known: Sequence[str]) -> str | None:
@@ -31,21 +92,12 @@ def meant_by(word: str, known: Sequence[str]) -> str | None:
 Numbered = tuple[tuple[int, PairMargin], ...]
 
 
-def faults_of(
-    entries: Sequence[Entry],
-    pairs: Numbered,
-    rest: Sequence[Rest],
-    bore: Bore | None,
-    field: MagneticField | None,
-) -> Iterator[Fault]:
-    """Everything that is wrong with a trap as a whole, in no particular order.
-
-    `bore` and `field` are None where they could not be read.
-    """
+def faults_of(entries: Sequence[Entry], pairs: Numbered, rest: Sequence[Rest]) -> Iterator[Fault]:
+    """Everything that is wrong with a trap as a whole, in no particular order."""
     stack = [entry for entry in entries if entry.model is Electrode]
     outputs = [entry for entry in entries if entry.model in (Converter, Switch)]
     yield from _reused(entries)
-    yield from stack_faults(stack, bore, field)
+    yield from _stack(stack)
     if stack and outputs:
         yield from _mentions(entries, outputs)
     else:
@@ -65,7 +117,7 @@ def _reused(entries: Sequence[Entry]) -> Iterator[Fault]:
             continue
         other = first.setdefault(entry.name, entry)
         if other is not entry:
-            message = f"the name {said(entry.name)} is already taken by {_called(other)}"
+            message = f"the name {_said(entry.name)} is already taken by {_called(other)}"
             hint = "electrodes, outputs, lines and triggers share their names"
             yield Fault((*entry.path, "name"), "name-reused", message, hint, (*other.path, "name"))
 
@@ -73,6 +125,73 @@ def _reused(entries: Sequence[Entry]) -> Iterator[Fault]:
 def _called(entry: Entry) -> str:
     article = "an" if SECTIONS[entry.model][0] in "aeiou" else "a"
     return f"{article} {SECTIONS[entry.model]}"
+
+
+def _stack(stack: Sequence[Entry]) -> Iterator[Fault]:
+    """Lengths, order and gaps of the electrodes, as far as their ends could be read."""
+    before: Entry | None = None
+    radius_m = yield from _radii(stack)
+    for entry in stack:
+        if not isinstance(entry.part, Stretch):
+            continue
+        if entry.part.to_m <= entry.part.from_m:
+            message = (
+                f"electrode {_said(entry.name)} ends at {_mm(entry.part.to_m)}, not after it begins"
+            )
+            hint = f"'to' lies above {_mm(entry.part.from_m)}"
+            yield Fault((*entry.path, "to"), "trap-not-sound", message, hint)
+            continue
+        if before is not None:
+            yield from _neighbours(before, entry, radius_m)
+        if before is None or entry.part.to_m > _ends(before)[1]:
+            before = entry
+
+
+def _radii(stack: Sequence[Entry]) -> Generator[Fault, None, float]:
+    """Tells of the first electrode that differs; gives the first one's radius, infinite if none."""
+    parts = [(entry, entry.part) for entry in stack if isinstance(entry.part, Electrode)]
+    if not parts:
+        return math.inf
+    radius_m = parts[0][1].radius_m
+    for entry, part in parts:
+        if part.radius_m != radius_m:
+            message = "a stepped bore is not understood yet: every electrode needs the same radius"
+            first = quoted(parts[0][1].name)
+            hint = f"{first} has {_mm(radius_m)}, {quoted(part.name)} {_mm(part.radius_m)}"
+            yield Fault((*entry.path, "radius"), "trap-not-sound", message, hint)
+            break
+    return radius_m
+
+
+def _ends(entry: Entry) -> tuple[float, float]:
+    return (entry.part.from_m, entry.part.to_m) if isinstance(entry.part, Stretch) else (0.0, 0.0)
+
+
+def _neighbours(left: Entry, right: Entry, radius_m: float) -> Iterator[Fault]:
+    path = (*right.path, "from")
+    (left_from_m, left_to_m), (right_from_m, right_to_m) = _ends(left), _ends(right)
+    gap_m = right_from_m - left_to_m
+    if right_to_m <= left_from_m:
+        message = f"electrode {_said(right.name)} lies before {_said(left.name)}"
+        yield Fault(path, "trap-not-sound", message, "list electrodes in order along the axis")
+    elif gap_m < 0:
+        message = (
+            f"electrode {_said(right.name)} begins {_mm(-gap_m)} before {_said(left.name)} ends"
+        )
+        hint = f"{_said(left.name)} ends at {_mm(left_to_m)}; electrodes do not overlap"
+        yield Fault(path, "trap-not-sound", message, hint)
+    elif right.number == left.number + 1 and gap_m > GAP_RADII_MAX * radius_m * (1 + DUST):
+        message = f"the gap between {_said(left.name)} and {_said(right.name)} is {_mm(gap_m)} wide"
+        hint = f"at most two radii, {_mm(GAP_RADII_MAX * radius_m)}; is an electrode missing?"
+        yield Fault(path, "trap-not-sound", message, hint)
+
+
+def _said(name: str | None) -> str:
+    return "without a name" if name is None else quoted(name)
+
+
+def _mm(length_m: float) -> str:
+    return f"{length_m * 1e3:.6g} mm"
 
 
 def _mentions(entries: Sequence[Entry], outputs: Sequence[Entry]) -> Iterator[Fault]:
@@ -118,7 +237,7 @@ def _unused(outputs: Sequence[Entry], used: set[str], strays: list[str]) -> Iter
     meant = {meant_by(word, known) for word in strays[:STRAYS_MAX]}
     for entry in idle:
         if entry.name not in meant:
-            message = f"output {said(entry.name)} drives no electrode and passes through no switch"
+            message = f"output {_said(entry.name)} drives no electrode and passes through no switch"
             hint = "name it as an electrode's output, or take it out"
             yield Fault((*entry.path, "name"), "name-unused", message, hint)
 

@@ -20,11 +20,11 @@ FINDINGS = {
 
 
 def judge_interlocks(manifest: Part) -> Iterator[Unsound]:
-    """Every rule that did not come out well and was not allowed; raises Unsound where unreadable."""
+    """Every rule that did not come out well and was not allowed; raises Unsound if unreadable."""
     allowed = {
         (allowance.text("name"), step)
         for allowance in manifest.parts("allowances")
-        for step in allowance.numbers("steps")
+        for step in map(int, allowance.numbers("steps"))
     }
     for rule in manifest.part("interlocks").parts("rules"):
         outcome = rule.text("outcome")

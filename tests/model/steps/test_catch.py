@@ -15,7 +15,7 @@ def test_a_new_block_then_the_gate_then_the_cloud(drawn):
     assert drawn(f"catch bunch {{ {BLOCK} }}") == [
         ("await_trigger", "arrival", None),
         ("close_gate", "G1", "G2", -4500.0, Fraction(62, 10**8)),
-        ("note", Caught("bunch", "G1", "G2", -4500.0, 620e-9)),
+        ("note", Caught("bunch", "G1", "G2")),
     ]
 
 

@@ -6,29 +6,23 @@ from fractions import Fraction
 
 import pytest
 
-from wellseq.model.effects import Acted, Cooled
+from wellseq.model.effects import Acted
 
 
 def test_it_holds_and_acts_on_one_cloud_or_two(drawn):
-    assert drawn("cool plus for 10 s") == [
-        ("hold", Fraction(10)),
-        ("note", Acted("plus")),
-        ("note", Cooled("plus")),
-    ]
+    assert drawn("cool plus for 10 s") == [("hold", Fraction(10)), ("note", Acted("plus"))]
     assert drawn("cool bunch with cool_ones for 60 s") == [
         ("hold", Fraction(60)),
         ("note", Acted("bunch")),
         ("note", Acted("cool_ones")),
-        ("note", Cooled("bunch", "cool_ones")),
     ]
 
 
-def test_until_claims_a_temperature_and_shortens_nothing(drawn):
-    assert drawn("cool bunch for 60 s until 150 K") == [
-        ("hold", Fraction(60)),
-        ("note", Acted("bunch")),
-        ("note", Cooled("bunch", "", 150.0)),
-    ]
+def test_until_is_refused_until_there_is_a_forecast(bench):
+    ((name, at, message),) = bench.refused("cool bunch for 60 s until 150 K")
+    assert (name, at) == ("unknown-name", "until")
+    assert message.startswith("`until` needs the forecast of temperature")
+    assert "assume" in message
 
 
 @pytest.mark.parametrize(
@@ -38,14 +32,6 @@ def test_until_claims_a_temperature_and_shortens_nothing(drawn):
         (
             "cool bunch with E1 for 1 s",
             ("unknown-name", "E1", "a cloud is needed here, and 'E1' is an electrode of the trap"),
-        ),
-        (
-            "cool bunch with bunch for 1 s",
-            ("syntax", "cool", "'bunch' cannot be its own coolant"),
-        ),
-        (
-            "cool bunch for 1 s until 0 K",
-            ("unit-mismatch", "0 K", "`until` needs a value above zero, and this is 0 K"),
         ),
         ("cool bunch, plus for 1 s", ("syntax", "plus", "`cool` does not take 'plus'")),
     ],

@@ -42,22 +42,11 @@ def test_a_label_that_comes_later_is_not_known_yet(bench):
     assert (name, message) == ("unknown-name", 'no step before this one is labelled "end"')
 
 
-@pytest.mark.parametrize(
-    ("word", "bound", "value"),
-    [
-        ("temperature", "150 K", 150.0),
-        ("number", "2e4", 2e4),
-        ("radius", "1 mm", 1e-3),
-        ("density", "1e8 /cm3", 1e14),
-    ],
-)
-def test_a_figure_of_the_forecast_can_be_claimed(drawn, word, bound, value):
-    assert drawn(f"require {word} of bunch below {bound}") == [
-        ("note", Claimed(word, "bunch", None, value))
-    ]
-    assert drawn(f"require {word} of bunch above {bound} throughout") == [
-        ("note", Claimed(word, "bunch", value, None, throughout=True))
-    ]
+@pytest.mark.parametrize("word", ["temperature", "number", "radius", "density"])
+def test_what_needs_the_forecast_is_refused(bench, word):
+    ((name, at, message),) = bench.refused(f"require {word} of bunch above 5 K")
+    assert (name, at) == ("unknown-name", word)
+    assert message.startswith("only depth, separation and time can be required yet")
 
 
 @pytest.mark.parametrize(
@@ -82,10 +71,6 @@ def test_a_figure_of_the_forecast_can_be_claimed(drawn, word, bound, value):
         (
             "require depth of bunch above -1 V",
             ("unit-mismatch", "-1 V", "`above` cannot be below zero, and this is -1 V"),
-        ),
-        (
-            "require temperature of bunch above 1 V",
-            ("unit-mismatch", "1 V", "`above` needs a temperature (K), and this is 1 V"),
         ),
         ("require depth above 1 V", ("syntax", "require", "`require depth` needs `of`")),
         (

@@ -34,7 +34,7 @@ EXAMPLE = "wellseq check evening.well --margins --let 'wall=80 V'"
 
 
 def add_arguments(parser: argparse.ArgumentParser) -> None:
-    """FILE…, --as, --known with --accept and --on, --changed-since, --at-once, --forecast, …"""
+    """FILE…, --as, --known with --accept and --on, --changed-since, --at-once, --let, --format."""
     parser.add_argument(
         "file", nargs="+", metavar="FILE", help="a sequence, a folder, or - for standard input"
     )
@@ -57,11 +57,6 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
         default=0,
         metavar="N",
         help="how many files are checked at a time (as many as there are processors)",
-    )
-    parser.add_argument(
-        "--forecast",
-        action="store_true",
-        help="also show the ledger of the clouds, a row per step and cloud",
     )
     add_lets(parser)
     add_format(parser)

@@ -15,11 +15,9 @@ from pydantic import BaseModel, ConfigDict, Field
 
 from wellseq.base.finding import Finding
 from wellseq.base.place import Place
-from wellseq.clouds.forecast import UNITS
 from wellseq.emit.examined import Examined
 from wellseq.emit.fingerprints import fingerprints
 from wellseq.emit.formats import Options
-from wellseq.emit.ledger import Entry
 from wellseq.version import __version__
 
 SCHEMA = "wellseq/findings"
@@ -89,37 +87,6 @@ class FoundThing(_Part):
     fingerprint: str = Field(description="survives edits elsewhere in the file")
 
 
-class Foretold(_Part):
-    """A figure: its best value and its interval in `unit`; null when it is not known."""
-
-    value: float | None
-    low: float | None
-    high: float | None
-    unit: str
-
-
-class LedgerRow(_Part):
-    """One cloud at the end of one step, as foretold."""
-
-    of: str = Field(description="the examined file that this belongs to")
-    cloud: str
-    block: str
-    step: str = Field(description="the verb of the step")
-    label: str
-    place: Span
-    passes: list[int]
-    start_s: float = Field(description="within the block, in s")
-    end_s: float
-    figures: dict[str, Foretold]
-    models: list[str]
-    spread: Literal["declared", "corners", "samples"] = Field(
-        description="how the intervals were made"
-    )
-    inside: bool = Field(description="whether every model was within its validity")
-    reasons: list[str] = Field(description="why figures are missing, where that arose here")
-    cites: str = Field(description="where missing figures went missing before")
-
-
 class FindingsReport(_Part):
     """Everything that was examined, everything that was not and why, and everything found."""
 
@@ -128,7 +95,6 @@ class FindingsReport(_Part):
     schema_version: Literal[1]
     files: list[ExaminedFile]
     findings: list[FoundThing]
-    forecast: list[LedgerRow] = Field(description="per step and cloud, in the order of play")
 
 
 def report(things: Sequence[Examined], options: Options) -> str:
@@ -145,7 +111,6 @@ def report(things: Sequence[Examined], options: Options) -> str:
                 thing.findings, fingerprints(thing, thing.findings), strict=True
             )
         ],
-        forecast=[_entry(thing, entry) for thing in things for entry in thing.ledger],
     )
     plain = document.model_dump(by_alias=True)
     return dumps(plain, indent=2, sort_keys=True, ensure_ascii=False, allow_nan=False) + "\n"
@@ -198,35 +163,6 @@ def _found(thing: Examined, finding: Finding, fingerprint: str) -> FoundThing:
         reason=finding.reason,
         known=finding.known,
         fingerprint=fingerprint,
-    )
-
-
-def _entry(thing: Examined, entry: Entry) -> LedgerRow:
-    row, origin = entry.row, entry.origin
-    return LedgerRow(
-        of=_text(thing.shown),
-        cloud=row.cloud,
-        block=entry.block,
-        step=origin.step,
-        label=origin.label,
-        place=_span(origin.place),
-        passes=list(origin.passes),
-        start_s=row.start_s,
-        end_s=row.end_s,
-        figures={
-            name: Foretold(
-                value=_known(figure.value),
-                low=_known(figure.low),
-                high=_known(figure.high),
-                unit=UNITS[name],
-            )
-            for name, figure in row.figures.items()
-        },
-        models=list(row.models),
-        spread=row.spread,
-        inside=row.inside,
-        reasons=list(entry.reasons),
-        cites=row.cites,
     )
 
 

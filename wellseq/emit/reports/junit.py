@@ -52,7 +52,7 @@ def _suite(number: int, thing: Examined) -> str:
             ("skipped", "skipped"),
         )
     }
-    shown = _attribute(thing.shown or "-")
+    shown = _attribute(thing.shown if thing.shown.strip() else "-")
     head = (
         f'  <testsuite name={shown} package="wellseq" id="{number}" hostname="{HOST}" '
         f'timestamp="{MOMENT}" time="0" tests="{len(cases)}" '

@@ -15,7 +15,6 @@ from wellseq.checks.numbers import amount, stretch
 from wellseq.emit.examined import Examined, nearest_of_each, standing
 from wellseq.emit.excerpt import marker, shown_line, source_line
 from wellseq.emit.formats import Options
-from wellseq.emit.ledger import ledger_lines
 
 _WORD = {
     Verdict.FAIL: "FAILS",
@@ -42,10 +41,6 @@ def _paragraphs(thing: Examined, options: Options) -> Iterator[str]:
         yield ""
     if options.margins:
         yield from _margins(thing, options)
-    if options.forecast and thing.ledger:
-        yield _painted(f"forecast of {printable(thing.shown)}", "1", options)
-        yield from ledger_lines(thing.ledger)
-        yield ""
     for why, names in thing.by_cause().items():
         yield from _row("not run", f"{', '.join(names)}: {printable(why)}", options)
     yield from _closing(thing, options)

@@ -75,4 +75,4 @@ class Catch(Step):
         """Wait for the bunch and close the near gate behind it."""
         pen.await_trigger(self.after, self.within)
         pen.close_gate(self.between, self.and_, self.at, self.closing)
-        pen.note(Caught(self.cloud, self.between, self.and_, self.at, float(self.closing)))
+        pen.note(Caught(self.cloud, self.between, self.and_))

@@ -1,32 +1,24 @@
 """cool: a cloud loses its heat, by radiation or to a coolant that shares its well."""
 
-from typing import Annotated, Self
+from collections.abc import Mapping
+from typing import Annotated, ClassVar
 
-from pydantic import model_validator
-
-from wellseq.model.effects import Acted, Cooled
+from wellseq.model.effects import Acted
 from wellseq.model.pen import Pen
-from wellseq.model.step import Cloud, Duration, Step, Subject, Takes
-
-Temperature = Annotated[float, Takes("quantity", "K", "positive")]
+from wellseq.model.step import Cloud, Duration, Step, Subject
 
 
 class Cool(Step):
-    """`cool CLOUD [with COOLANT] for T [until K]`: nothing moves; both clouds must be in the trap.
+    """`cool CLOUD [with COOLANT] for T`: nothing moves; both clouds must be in the trap."""
 
-    `until` (K) shortens nothing: it is a claim about the end of the step.
-    """
+    REFUSED: ClassVar[Mapping[str, str]] = {
+        "until": "`until` needs the forecast of temperature, which this version does not make; "
+        "leave it out or state the measured value with `assume`"
+    }
 
     cloud: Annotated[Cloud, Subject()]
     with_: Cloud | None = None
     for_: Duration
-    until: Temperature | None = None
-
-    @model_validator(mode="after")
-    def _two_clouds(self) -> Self:
-        if self.cloud == self.with_:
-            raise ValueError(f"'{self.cloud}' cannot be its own coolant")
-        return self
 
     def draw(self, pen: Pen) -> None:
         """Hold while the clouds cool."""
@@ -34,4 +26,3 @@ class Cool(Step):
         pen.note(Acted(self.cloud))
         if self.with_ is not None:
             pen.note(Acted(self.with_))
-        pen.note(Cooled(self.cloud, self.with_ or "", self.until))

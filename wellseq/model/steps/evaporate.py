@@ -26,4 +26,4 @@ class Evaporate(Step):
             self.cloud, self.through, self.to, self.over, exponentially=self.exponentially
         )
         pen.note(Acted(self.cloud))
-        pen.note(Evaporated(self.cloud, self.through, self.to, self.exponentially))
+        pen.note(Evaporated(self.cloud, self.through, self.to))

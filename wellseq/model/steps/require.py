@@ -1,6 +1,7 @@
 """require: the author's own claim about the state at this place."""
 
-from typing import Annotated, Literal, Self
+from collections.abc import Mapping
+from typing import Annotated, ClassVar, Literal, Self
 
 from pydantic import model_validator
 
@@ -8,32 +9,22 @@ from wellseq.model.effects import Claimed
 from wellseq.model.pen import Pen
 from wellseq.model.step import Cloud, Label, Step, Subject, Takes, Word
 
-_UNITS = (
-    ("depth", "V"),
-    ("separation", "m"),
-    ("time", "s"),
-    ("temperature", "K"),
-    ("number", ""),
-    ("radius", "m"),
-    ("density", "/m3"),
-)
-_TAKES = {"separation": ("of", "from"), "time": ("after",)}
+_LATER = "only depth, separation and time can be required yet; {} needs the forecast of clouds"
+_FORECAST = ("temperature", "number", "radius", "density")
+_UNITS = (("depth", "V"), ("separation", "m"), ("time", "s"))
 Bound = Annotated[float, Takes("quantity", by="quantity", units=_UNITS, sign="not negative")]
 
 
 class Require(Step):
-    """`require QUANTITY of CLOUD`, `separation of CLOUD from CLOUD`, `time after LABEL`, a bound.
+    """`require depth of CLOUD`, `separation of CLOUD from CLOUD`, `time after LABEL`, and a bound.
 
-    The bound is `above X`, `below X` or `between X and Y`; in V (depth), m (separation, radius), s
-    (time), K (temperature), 1/m3 (density), none (number).  `throughout` asks for the worst since
-    the last label instead of the state at this place.
+    The bound is `above X`, `below X` or `between X and Y`; in V (depth), m (separation), s (time).
+    `throughout` asks for the worst since the last label instead of the state at this place.
     """
 
-    quantity: Annotated[
-        Literal["depth", "separation", "time", "temperature", "number", "radius", "density"],
-        Takes("choice"),
-        Subject(),
-    ]
+    REFUSED: ClassVar[Mapping[str, str]] = {word: _LATER.format(word) for word in _FORECAST}
+
+    quantity: Annotated[Literal["depth", "separation", "time"], Takes("choice"), Subject()]
     of: Cloud | None = None
     from_: Cloud | None = None
     after: Label | None = None
@@ -45,7 +36,7 @@ class Require(Step):
 
     @model_validator(mode="after")
     def _whose(self) -> Self:
-        takes = _TAKES.get(self.quantity, ("of",))
+        takes = {"depth": ("of",), "separation": ("of", "from"), "time": ("after",)}[self.quantity]
         given = {"of": self.of, "from": self.from_, "after": self.after}
         for word, value in given.items():
             if (value is not None) != (word in takes):

@@ -8,7 +8,7 @@ of order m at n angles).
 from collections.abc import Iterator
 from typing import Annotated
 
-from wellseq.model.effects import Acted, Rotated
+from wellseq.model.effects import Acted
 from wellseq.model.pen import Pen
 from wellseq.model.step import (
     Amplitude,
@@ -77,14 +77,3 @@ class Rotate(Step):
             sense=-sense if self.backwards else sense,
         )
         pen.note(Acted(self.cloud))
-        pen.note(
-            Rotated(
-                self.cloud,
-                self.on,
-                self.from_,
-                self.to,
-                self.at,
-                self.order,
-                self.backwards,
-            )
-        )

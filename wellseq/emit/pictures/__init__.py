@@ -1,1 +1,0 @@
-"""A case as pictures: a page for a browser, stills, strips for a terminal, for notebooks."""
